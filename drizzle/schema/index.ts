@@ -1,0 +1,6 @@
+export * from './groups.ts'
+export * from './log.ts'
+export * from './pages.ts'
+export * from './people.ts'
+export * from './revisions.ts'
+export * from './sources.ts'

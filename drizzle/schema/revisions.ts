@@ -1,0 +1,96 @@
+import { index, int, mysqlEnum, mysqlTable, uniqueIndex, varchar } from 'drizzle-orm/mysql-core'
+import { revisionStates } from '#shared/api/pages.ts'
+import { idColumn, jsonDocument, primaryId, time } from './columns.ts'
+import { pages } from './pages.ts'
+import { people } from './people.ts'
+
+/** A card by what it was computed from; immutable. */
+export const cards = mysqlTable(
+  'cards',
+  {
+    id: primaryId(),
+    fingerprint: varchar('fingerprint', { length: 80 }).notNull(),
+    engine: varchar('engine', { length: 20 }).notNull(),
+    parts: varchar('parts', { length: 60 }).notNull(),
+    card: jsonDocument('card').notNull(),
+    /** shared/api/pages.ts cardSummary: what a list row needs. */
+    summary: jsonDocument('summary').notNull(),
+    at: time('at').notNull(),
+  },
+  (table) => [uniqueIndex('cards_key').on(table.fingerprint, table.engine, table.parts)],
+)
+
+/** Frozen; only `state`, `settled_at` and `reason` ever change. */
+export const revisions = mysqlTable(
+  'revisions',
+  {
+    id: primaryId(),
+    pageId: idColumn('page_id')
+      .notNull()
+      .references(() => pages.id),
+    number: int('number').notNull(),
+    major: int('major').notNull(),
+    minor: int('minor').notNull(),
+    patch: int('patch').notNull(),
+    state: mysqlEnum('state', revisionStates).notNull(),
+    summary: varchar('summary', { length: 500 }).notNull(),
+    document: jsonDocument('document').notNull(),
+    /** SHA-256 of the RFC 8785 form of the frozen document: what signatures refer to. */
+    digest: varchar('digest', { length: 80 }).notNull(),
+    fingerprint: varchar('fingerprint', { length: 80 }).notNull(),
+    engine: varchar('engine', { length: 20 }).notNull(),
+    cardId: idColumn('card_id')
+      .notNull()
+      .references(() => cards.id),
+    baseId: idColumn('base_id'),
+    generation: int('generation').notNull(),
+    sentBy: idColumn('sent_by')
+      .notNull()
+      .references(() => people.id),
+    sentAt: time('sent_at').notNull(),
+    settledAt: time('settled_at'),
+    reason: varchar('reason', { length: 1000 }),
+  },
+  (table) => [
+    uniqueIndex('revisions_number').on(table.pageId, table.number),
+    uniqueIndex('revisions_mark').on(table.pageId, table.major, table.minor, table.patch),
+    index('revisions_state').on(table.state, table.sentAt),
+  ],
+)
+
+/** Only ever inserted. */
+export const signatures = mysqlTable(
+  'signatures',
+  {
+    id: primaryId(),
+    revisionId: idColumn('revision_id')
+      .notNull()
+      .references(() => revisions.id),
+    personId: idColumn('person_id')
+      .notNull()
+      .references(() => people.id),
+    meaning: mysqlEnum('meaning', ['written', 'checked', 'approved', 'withdrawn']).notNull(),
+    digest: varchar('digest', { length: 80 }).notNull(),
+    at: time('at').notNull(),
+  },
+  (table) => [uniqueIndex('signatures_once').on(table.revisionId, table.personId, table.meaning)],
+)
+
+export const remarks = mysqlTable(
+  'remarks',
+  {
+    id: primaryId(),
+    revisionId: idColumn('revision_id')
+      .notNull()
+      .references(() => revisions.id),
+    authorId: idColumn('author_id')
+      .notNull()
+      .references(() => people.id),
+    /** Line or parameter it speaks of; both null: the whole revision. */
+    line: int('line'),
+    symbol: varchar('symbol', { length: 64 }),
+    text: varchar('text', { length: 4000 }).notNull(),
+    at: time('at').notNull(),
+  },
+  (table) => [index('remarks_revision').on(table.revisionId)],
+)
