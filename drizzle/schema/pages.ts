@@ -1,4 +1,4 @@
-import { index, int, mysqlEnum, mysqlTable, primaryKey, uniqueIndex, varchar } from 'drizzle-orm/mysql-core'
+import { index, int, mysqlEnum, mysqlTable, primaryKey, text, uniqueIndex, varchar } from 'drizzle-orm/mysql-core'
 import { readAccess } from '#shared/api/roles.ts'
 import { idColumn, longBlob, primaryId, time } from './columns.ts'
 import { groups } from './groups.ts'
@@ -28,7 +28,12 @@ export const pages = mysqlTable(
     ownerEpoch: int('owner_epoch').notNull().default(0),
     /** cards.id of the last computed card of the draft, if it makes a model. */
     draftCardId: idColumn('draft_card_id'),
+    /** What would be frozen now (revisions.digest), so that a draft can be told from the revision in force; null where it makes no model. */
+    draftDigest: varchar('draft_digest', { length: 80 }),
     draftChangedAt: time('draft_changed_at').notNull(),
+    /** Symbols, meanings and sources to search by: of the draft (members only), and of what is public. */
+    draftWords: text('draft_words').notNull().default(''),
+    publicWords: text('public_words').notNull().default(''),
     /** Raised with every change of the page's row that a client may hold: its ETag. */
     version: int('version').notNull().default(1),
     createdAt: time('created_at').notNull(),
