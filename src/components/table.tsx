@@ -1,0 +1,55 @@
+import type { ComponentProps, ReactNode } from 'react'
+import { classes } from '#src/lib/class-names.ts'
+
+/** A ruled table: heavy line under the head, hairlines between rows. Scrolls sideways inside itself where it must. */
+export function Table({
+  caption,
+  captionHidden = true,
+  children,
+  className,
+}: {
+  caption: string
+  captionHidden?: boolean
+  children: ReactNode
+  className?: string
+}) {
+  return (
+    // A scrolling box has to be reachable by keyboard.
+    // biome-ignore lint/a11y/noNoninteractiveTabindex: see above
+    <section aria-label={caption} tabIndex={0} className={classes('overflow-x-auto', className)}>
+      <table className="w-full border-collapse text-left">
+        <caption className={captionHidden ? 'sr-only' : 'px-4 py-2 text-left text-note text-ink-2'}>{caption}</caption>
+        {children}
+      </table>
+    </section>
+  )
+}
+
+export function TableHead({
+  columns,
+}: {
+  columns: readonly (string | { label: string; className?: string; hidden?: boolean })[]
+}) {
+  return (
+    <thead>
+      <tr className="border-b-[1.5px] border-ink">
+        {columns.map((column) => {
+          const { label, className, hidden } = typeof column === 'string' ? { label: column } : column
+          return (
+            <th key={label} scope="col" className={classes('px-4 py-2.5 text-label font-[400] text-ink-2', className)}>
+              {hidden ? <span className="sr-only">{label}</span> : label}
+            </th>
+          )
+        })}
+      </tr>
+    </thead>
+  )
+}
+
+export function Cell({ className, ...rest }: ComponentProps<'td'>) {
+  return <td {...rest} className={classes('px-4 py-2 align-middle', className)} />
+}
+
+export function Row({ className, ...rest }: ComponentProps<'tr'>) {
+  return <tr {...rest} className={classes('border-b border-rule last:border-b-0', className)} />
+}

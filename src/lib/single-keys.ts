@@ -1,0 +1,13 @@
+import { remember, remembered } from './storage.ts'
+
+/** Single-key shortcuts can be switched off (WCAG 2.1.4); on until then. */
+export const singleKeysOn = (): boolean => remembered('single-keys') !== 'off'
+export const setSingleKeys = (on: boolean): void => remember('single-keys', on ? null : 'off')
+
+/** True where a key is meant for what has the focus: fields, editors, lists of choices, menus, dialogs. */
+export function isTyping(target: EventTarget | null): boolean {
+  if (!(target instanceof Element)) return false
+  if (target.closest('dialog[open], [role="menu"], [role="dialog"], [role="listbox"]')) return true
+  if (target.closest('input, textarea, select')) return !target.matches('input[type="checkbox"], input[type="radio"]')
+  return target instanceof HTMLElement && target.isContentEditable
+}
