@@ -20,6 +20,9 @@ export type Database = MySql2Database<typeof schema> & { $client: Pool }
 /** The database or an open transaction: the first argument of every query. */
 export type Queryable = MySqlDatabase<MySql2QueryResultHKT, MySql2PreparedQueryHKT, typeof schema>
 
+/** An open transaction, where only one will do. */
+export type Transaction = Parameters<Parameters<Database['transaction']>[0]>[0]
+
 export interface DatabaseHandle {
   db: Database
   pool: Pool

@@ -18,6 +18,8 @@ export const problemStatus = {
   'already-exists': 409,
   'last-maintainer': 409,
   'unsaved-edits': 409,
+  /** An Idempotency-Key that belongs to another request, or to one that has not ended. */
+  'same-key': 409,
   'link-used': 410,
   changed: 412,
   'too-large': 413,
