@@ -14,8 +14,6 @@ export function Table({
   className?: string
 }) {
   return (
-    // A scrolling box has to be reachable by keyboard.
-    // biome-ignore lint/a11y/noNoninteractiveTabindex: see above
     <section aria-label={caption} tabIndex={0} className={classes('overflow-x-auto', className)}>
       <table className="w-full border-collapse text-left">
         <caption className={captionHidden ? 'sr-only' : 'px-4 py-2 text-left text-note text-ink-2'}>{caption}</caption>
