@@ -1,6 +1,6 @@
 import { index, int, mysqlEnum, mysqlTable, primaryKey, text, uniqueIndex, varchar } from 'drizzle-orm/mysql-core'
 import { readAccess } from '#shared/api/roles.ts'
-import { idColumn, longBlob, primaryId, time } from './columns.ts'
+import { idColumn, jsonDocument, longBlob, primaryId, time } from './columns.ts'
 import { groups } from './groups.ts'
 import { people } from './people.ts'
 
@@ -28,6 +28,8 @@ export const pages = mysqlTable(
     ownerEpoch: int('owner_epoch').notNull().default(0),
     /** cards.id of the last computed card of the draft, if it makes a model. */
     draftCardId: idColumn('draft_card_id'),
+    /** Its summary (shared/api/pages.ts cardSummary). */
+    draftSummary: jsonDocument('draft_summary'),
     /** What would be frozen now (revisions.digest), so that a draft can be told from the revision in force; null where it makes no model. */
     draftDigest: varchar('draft_digest', { length: 80 }),
     draftChangedAt: time('draft_changed_at').notNull(),

@@ -13,8 +13,6 @@ export const cards = mysqlTable(
     engine: varchar('engine', { length: 20 }).notNull(),
     parts: varchar('parts', { length: 60 }).notNull(),
     card: jsonDocument('card').notNull(),
-    /** shared/api/pages.ts cardSummary: what a list row needs. */
-    summary: jsonDocument('summary').notNull(),
     at: time('at').notNull(),
   },
   (table) => [uniqueIndex('cards_key').on(table.fingerprint, table.engine, table.parts)],
@@ -42,6 +40,8 @@ export const revisions = mysqlTable(
     cardId: idColumn('card_id')
       .notNull()
       .references(() => cards.id),
+    /** shared/api/pages.ts cardSummary: what a list row needs. Not with the card: it names meanings, which the fingerprint leaves out. */
+    cardSummary: jsonDocument('card_summary').notNull(),
     baseId: idColumn('base_id'),
     generation: int('generation').notNull(),
     sentBy: idColumn('sent_by')

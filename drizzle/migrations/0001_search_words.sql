@@ -1,3 +1,0 @@
-ALTER TABLE `pages` ADD `draft_digest` varchar(80);--> statement-breakpoint
-ALTER TABLE `pages` ADD `draft_words` text DEFAULT ('') NOT NULL;--> statement-breakpoint
-ALTER TABLE `pages` ADD `public_words` text DEFAULT ('') NOT NULL;
