@@ -74,6 +74,7 @@ export function assemble(tables: ModelTables): Assembled {
 const spelled = (symbols: TableSymbols) => ({
   parameters: new Map([...symbols.parameters].map(([key, row]) => [key, row.symbol ?? key])),
   states: new Map([...symbols.states].map(([key, row]) => [key, row.symbol ?? key])),
+  refused: new Set([...symbols.refused].map((typed) => foldSymbol(typed) ?? typed)),
 })
 
 function controlOf(
@@ -86,6 +87,7 @@ function controlOf(
   if (typed === null || tables.parameters === null) return null
   const key = foldSymbol(typed)
   const row = key === null ? undefined : symbols.parameters.get(key)
+  if (!row && symbols.refused.has(typed)) return null
   if (key === null || !row) {
     const state = key !== null && symbols.states.has(key) ? ' It is a state.' : ''
     errors.push({
@@ -98,7 +100,7 @@ function controlOf(
   const lacking = [row.low === null ? 'low' : '', row.high === null ? 'high' : ''].filter((end) => end !== '')
   const [firstLacking] = lacking
   if (firstLacking !== undefined) {
-    const message = `The ${fieldName[field]} ${quoted(typed)} needs a range: its ${lacking.join(' and its ')} end is missing.`
+    const message = `The ${fieldName[field]} ${quoted(typed)} needs a range to be swept: give its ${lacking.join(' and its ')} end.`
     errors.push({ code: 'bad-range', message, path: `${row.path}.${firstLacking}` })
   }
   return key
@@ -144,7 +146,13 @@ function observedOf(
   const helper = key === null ? undefined : ordered.find((statement) => statement.key === key)
   if (key !== null && helper) return { kind: 'helper', key, symbol: helper.symbol }
   // A helper whose line cannot be read was told there.
-  if (block === null || block.lines.length === 0 || (key !== null && block.helpers.has(key))) return null
+  if (
+    block === null ||
+    block.lines.length === 0 ||
+    symbols.refused.has(typed) ||
+    (key !== null && block.helpers.has(key))
+  )
+    return null
   const parameter = key !== null && symbols.parameters.has(key) ? ' It is a parameter.' : ''
   errors.push({
     code: 'bad-observed',

@@ -3,8 +3,9 @@ import type { ModelDocument, Uncertainty } from './document.ts'
 import type { ModelError } from './errors.ts'
 import { guardValue } from './json-guard.ts'
 import { readNumberCell } from './number-cell.ts'
+import { sortErrors } from './sort-errors.ts'
 import { quoted } from './symbols.ts'
-import { type CheckedModel, sortErrors } from './system.ts'
+import type { CheckedModel } from './system.ts'
 import type { Cell, ModelTables } from './tables.ts'
 
 /**

@@ -13,10 +13,11 @@ export const longestBlock = 65_536
 /** Most helper quantities. */
 export const mostHelpers = 200
 
-/** Symbols of the tables: key to the symbol as typed there. */
+/** Symbols of the tables: key to the symbol as typed there. `refused` are keys whose rows were reported already. */
 export interface DeclaredSymbols {
   parameters: ReadonlyMap<string, string>
   states: ReadonlyMap<string, string>
+  refused: ReadonlySet<string>
 }
 
 /** A statement that could be read whole. `symbol` is spelled as the tables spell it. */
@@ -133,7 +134,7 @@ function collectLeft(read: readonly Statement[], symbols: DeclaredSymbols | null
 
     if (kind === 'equation') {
       sides.started.add(key)
-      if (symbols === null || symbols.states.has(key)) continue
+      if (symbols === null || symbols.states.has(key) || symbols.refused.has(key)) continue
       sides.undeclared.set(key, statement.symbol)
       if (symbols.parameters.has(key))
         refuse('missing-state', `${name} is a parameter, so it has no equation. List it among the states instead.`)

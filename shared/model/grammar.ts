@@ -13,8 +13,8 @@ import type { Place, Token } from './tokens.ts'
 
 /** Deepest nesting of brackets, powers and signs. */
 export const deepestNesting = 200
-/** Most numbers and symbols in one statement. */
-export const mostOperands = 2000
+/** Most numbers and symbols in one statement: a tree of at most 2,000 nodes, which recursion can walk. */
+export const mostOperands = 1000
 
 const functions: ReadonlySet<string> = new Set(functionNames)
 /** True for the name of a function a model may call. */

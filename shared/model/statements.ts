@@ -1,5 +1,5 @@
 import type { ModelError } from './errors.ts'
-import { quoted } from './symbols.ts'
+import { foldSymbol, quoted } from './symbols.ts'
 import { type Place, type Token, type TokenLine, tokenise } from './tokens.ts'
 
 /**
@@ -122,6 +122,14 @@ function readLeft(tokens: Token[], errors: ModelError[], faultyLines: ReadonlySe
     statement.symbol = head.text
   }
 
+  if (statement.kind === 'equation' && foldSymbol(statement.symbol) === null) {
+    statement.key = null
+    fault(
+      head ?? first,
+      `${quoted(statement.symbol)} is not a symbol, so it has no rate: a symbol starts with a letter.`,
+    )
+    return statement
+  }
   // A character that was refused has been told; what it does to the shape of the line need not be told again.
   if (left.some((token) => token.kind === 'bad')) {
     if (statement.kind === 'helper') statement.key = null

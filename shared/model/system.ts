@@ -4,6 +4,7 @@ import { type ModelDocument, readRaw, readShape } from './document.ts'
 import type { ModelError } from './errors.ts'
 import type { ModelSystem } from './expression.ts'
 import { isRecord } from './json-guard.ts'
+import { sortErrors } from './sort-errors.ts'
 import type { Cell, ModelTables } from './tables.ts'
 
 /** The system of a document whose shape is right, or every fault of what it says. */
@@ -15,20 +16,6 @@ export type BuiltSystem =
 export type CheckedModel =
   | { ok: true; document: ModelDocument; system: ModelSystem; warnings: CardWarning[] }
   | { ok: false; errors: ModelError[] }
-
-/** Most faults told at once. */
-export const mostErrors = 500
-
-/** Faults of fields first, then by line and column; each place and code once. */
-export function sortErrors(errors: readonly ModelError[]): ModelError[] {
-  const told = new Set<string>()
-  return [...errors]
-    .sort((a, b) => (a.line ?? 0) - (b.line ?? 0) || (a.column ?? 0) - (b.column ?? 0))
-    .filter((error) => {
-      const id = `${error.code} ${error.line ?? ''} ${error.column ?? ''} ${error.path ?? ''} ${error.line === undefined ? error.message : ''}`
-      return told.size < mostErrors && !told.has(id) && told.add(id)
-    })
-}
 
 /**
  * Builds the system of a document: names resolved, ranges checked, equations read, helpers in order of use, units checked.

@@ -39,15 +39,19 @@ export interface ModelTables {
 export const mostStates = 30
 export const mostParameters = 200
 
-/** Symbols of both tables: key to row. A row whose symbol is refused is in neither. */
+/**
+ * Symbols of both tables: key to row. A row whose symbol is refused is in neither; what was typed there is in `refused`, so
+ * that uses of it are not told as well.
+ */
 export interface TableSymbols {
   parameters: Map<string, ParameterRow>
   states: Map<string, StateRow>
+  refused: Set<string>
 }
 
 /** Checks the symbols of both tables and gives them by key. */
 export function readSymbols(tables: ModelTables, errors: ModelError[]): TableSymbols {
-  const found: TableSymbols = { parameters: new Map(), states: new Map() }
+  const found: TableSymbols = { parameters: new Map(), states: new Map(), refused: new Set() }
   const looks = new Map<string, { key: string; symbol: string; path: string }>()
   const declare = <Row extends TableRow>(rows: readonly Row[], into: Map<string, Row>) => {
     for (const row of rows) {
@@ -56,12 +60,14 @@ export function readSymbols(tables: ModelTables, errors: ModelError[]): TableSym
       const fault = symbolFault(row.symbol)
       const key = foldSymbol(row.symbol)
       if (fault || key === null) {
+        found.refused.add(row.symbol)
         errors.push({ code: fault?.code ?? 'syntax', message: fault?.message ?? 'This is not a symbol.', path })
         continue
       }
       const look = printedLook(row.symbol)
       const twin = looks.get(look) ?? looks.get(key)
       if (twin) {
+        found.refused.add(row.symbol)
         const why =
           twin.key === key
             ? twin.symbol === row.symbol

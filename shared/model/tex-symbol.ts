@@ -21,9 +21,9 @@ function capital(name: string): string {
 /**
  * A symbol in TeX: Greek letters as such, letters of one word upright together in italic, digits and what follows an
  * underscore as subscript: omega0 and ω₀ are \omega_{0}, gNa is \mathit{gNa}, x_ref is x_{\mathrm{ref}}.
- * Takes valid symbols only; every character of the result is ASCII or a Latin letter inside \text.
+ * `dotted` sets a dot over it, for a rate. Takes valid symbols only; every character of the result is ASCII or a Latin letter inside \text.
  */
-export function symbolTex(symbol: string): string {
+export function symbolTex(symbol: string, dotted = false): string {
   const plain = symbol.normalize('NFKC')
   const match = /^([^_]*?)([0-9]*)((?:_.*)?)$/su.exec(plain)
   const head = match?.[1] ?? plain
@@ -31,7 +31,7 @@ export function symbolTex(symbol: string): string {
   const tail = (match?.[3] ?? '').split('_').filter((part) => part !== '')
   // Digits inside the word (a1b) stay in it.
   const below = [digits, ...tail].filter((part) => part !== '').map(subscriptTex)
-  const base = wordTex(head)
+  const base = dotted ? `\\dot{${wordTex(head)}}` : wordTex(head)
   return below.length > 0 ? `${base}_{${below.join(',')}}` : base
 }
 

@@ -31,7 +31,11 @@ export interface TexTables {
  * user's goes into TeX but letters and digits of symbols; use it with trust off all the same. Never throws.
  */
 export function blockToTex(tables: TexTables): TexLine[] {
-  const symbols: DeclaredSymbols = { parameters: keyed(tables.parameters), states: keyed(tables.states) }
+  const symbols: DeclaredSymbols = {
+    parameters: keyed(tables.parameters),
+    states: keyed(tables.states),
+    refused: new Set(),
+  }
   const block = parseBlock(tables.equations, symbols)
   const spelled = new Map<string, string>([...block.helpers, ...symbols.states, ...symbols.parameters])
   const spell = (key: string) => spelled.get(key) ?? key
@@ -76,10 +80,10 @@ export function statementTex(
   statement: Pick<ParsedStatement, 'kind' | 'key' | 'symbol' | 'expression'>,
   spell: (key: string) => string,
 ): string | null {
-  const left = symbolTex(statement.symbol)
+  const left = symbolTex(statement.symbol, statement.kind === 'equation')
   const right = expressionTex(statement.expression, spell)
   if (right === null) return null
-  const tex = `${statement.kind === 'equation' ? `\\dot{${left}}` : left} = ${right}`
+  const tex = `${left} = ${right}`
   return tex.length <= longestTex ? tex : null
 }
 
@@ -123,18 +127,24 @@ class TexWriter {
     if (depth > deepestTex || this.written > longestTex) return null
     switch (at.kind) {
       case 'number':
-        return numberTex(at.value)
+        return numberTex(at.value, least)
       case 'constant':
         return at.name === 'pi' ? '\\pi' : '\\mathrm{e}'
       case 'symbol':
         return symbolTex(this.spell(at.key))
       case 'negate':
-        return this.around(least > strengthOfSign, [at.of], (inner) => `-${inner[0]}`, [strengthOfSign], depth)
+        return this.negated(at.of, least > strengthOfSign, depth)
       case 'call':
-        return this.call(at.name, at.args, depth)
+        return this.call(at.name, at.args, least, depth)
       case 'binary':
         return this.binary(at, least, depth)
     }
+  }
+
+  private negated(of: Expression, brackets: boolean, depth: number): string | null {
+    const inner = this.write(of, of.kind === 'negate' ? 4 : strengthOfSign, depth + 1)
+    if (inner === null) return null
+    return brackets ? bracketed(`-${inner}`) : `-${inner}`
   }
 
   private binary(at: Expression & { kind: 'binary' }, least: number, depth: number): string | null {
@@ -153,37 +163,38 @@ class TexWriter {
       const tex = `${base}^{${power}}`
       return least > 4 ? bracketed(tex) : tex
     }
-    const rank = strength[operator]
-    // A sign after an operator is bracketed in print, or two signs would meet.
-    const after = right.kind === 'negate' ? 4 : rank + 1
-    const join = operator === '*' ? (startsWithDigit(right) ? ' \\cdot ' : ' \\, ') : ` ${operator} `
-    return this.around(least > rank, [left, right], ([a, b]) => `${a}${join}${b}`, [rank, after], depth)
+    return this.chain(at, strength[operator], least, depth)
   }
 
-  private call(name: string, args: readonly Expression[], depth: number): string | null {
+  // Sums and products may be a thousand terms long: they are walked, not descended into.
+  private chain(at: Expression & { kind: 'binary' }, rank: number, least: number, depth: number): string | null {
+    const inside = depth + (least > rank ? 1 : 0)
+    const steps: { operator: string; right: Expression }[] = []
+    let first: Expression = at
+    while (first.kind === 'binary' && strength[first.operator] === rank && first.operator !== '/') {
+      steps.push({ operator: first.operator, right: first.right })
+      first = first.left
+    }
+    let tex = this.write(first, rank, inside)
+    for (const { operator, right } of steps.reverse()) {
+      // A sign after an operator is bracketed in print, or two signs would meet.
+      const next = tex === null ? null : this.write(right, right.kind === 'negate' ? 4 : rank + 1, inside)
+      if (tex === null || next === null || tex.length > longestTex) return null
+      const join = operator === '*' ? (startsWithDigit(right) ? ' \\cdot ' : ' \\, ') : ` ${operator} `
+      tex += join + next
+    }
+    return tex !== null && least > rank ? bracketed(tex) : tex
+  }
+
+  private call(name: string, args: readonly Expression[], least: number, depth: number): string | null {
     const inner = args.map((arg) => this.write(arg, 0, depth + 1))
     if (inner.some((one) => one === null)) return null
     const list = inner.join(', ')
     if (name === 'sqrt') return `\\sqrt{${list}}`
     if (name === 'abs') return `\\left|${list}\\right|`
-    return `${own.get(name) ?? `\\operatorname{${name}}`}${bracketed(list)}`
-  }
-
-  private around(
-    brackets: boolean,
-    parts: readonly Expression[],
-    join: (inner: readonly string[]) => string,
-    least: readonly number[],
-    depth: number,
-  ): string | null {
-    const inner: string[] = []
-    for (const [i, part] of parts.entries()) {
-      const tex = this.write(part, least[i] ?? 0, depth + (brackets ? 1 : 0))
-      if (tex === null) return null
-      inner.push(tex)
-    }
-    const tex = join(inner)
-    return brackets ? bracketed(tex) : tex
+    const tex = `${own.get(name) ?? `\\operatorname{${name}}`}${bracketed(list)}`
+    // The square of a sine must not read as the sine of a square.
+    return least > 4 ? bracketed(tex) : tex
   }
 }
 
@@ -197,7 +208,9 @@ function startsWithDigit(expression: Expression): boolean {
   }
 }
 
-function numberTex(value: number): string {
+function numberTex(value: number, least: number): string {
   const [digits = '', exponent] = String(value).split('e')
-  return exponent === undefined ? digits : `${digits} \\cdot 10^{${Number(exponent)}}`
+  if (exponent === undefined) return digits
+  const tex = `${digits} \\cdot 10^{${Number(exponent)}}`
+  return least > 2 ? bracketed(tex) : tex
 }

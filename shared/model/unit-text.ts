@@ -126,8 +126,22 @@ export function sameUnit(a: Unit, b: Unit): boolean {
   return sameKind(a, b) && Math.abs(a.factor / b.factor - 1) < 1e-9
 }
 
-/** A unit in SI base units, as in kg*m/s^2, with its factor where that is not 1. */
-export function formatUnit({ factor, powers }: Unit): string {
+// Names worth using in a message, besides those of the model's own tables.
+const speaking = ['N', 'Pa', 'J', 'W', 'V', 'ohm', 'C', 'F', 'H', 'T'].flatMap((name) =>
+  ['', 'm', 'k', 'u', 'M'].map((prefix) => `${prefix}${name}`),
+)
+
+/**
+ * A unit in words for a message: as one of `typed` (the tables' own spellings) where one of them is it, else a named SI
+ * unit, else in base units, as in kg*m/s^2, with its factor where that is not 1.
+ */
+export function formatUnit(unit: Unit, typed: readonly string[] = []): string {
+  if (sameUnit(unit, pure)) return 'a pure number'
+  for (const text of [...typed, ...speaking]) {
+    const read = parseUnit(text)
+    if (read.ok && sameUnit(read.unit, unit)) return text
+  }
+  const { factor, powers } = unit
   const part = (power: number, name: string) => (power === 1 ? name : `${name}^${Number(power.toPrecision(4))}`)
   const present = baseNames
     .map((name, i) => ({ name, power: powers[i] ?? 0 }))

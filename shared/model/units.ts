@@ -7,6 +7,9 @@ import { quoted } from './symbols.ts'
 import type { ModelTables, TableSymbols } from './tables.ts'
 import { formatUnit, over, parseUnit, pure, sameKind, sameUnit, times, toPower, type Unit } from './unit-text.ts'
 
+/** Most mismatches told at once. */
+const mostWarnings = 200
+
 /**
  * The unit check of a model: every sum, every argument, every exponent and both sides of each equation. A unit that is
  * absent is unknown (null) and fits anything. One slip is told once, on the line where it is made: after a mismatch a sum
@@ -37,7 +40,15 @@ export function checkUnits(
   for (const [key, row] of symbols.parameters) values.set(key, typeof row.value === 'number' ? row.value : null)
   for (const helper of orderedHelpers) spellings.set(helper.key, helper.symbol)
 
-  const scope = { units, values, spell: (key: string) => spellings.get(key) ?? key }
+  const typed = new Set<string>()
+  const timeText = tables.timeUnit?.trim() ?? ''
+  for (const row of [...symbols.states.values(), ...symbols.parameters.values()]) {
+    const text = row.unit?.trim() ?? ''
+    if (text === '' || text.length > 40) continue
+    typed.add(text)
+    if (time && /^[A-Za-z]+$/.test(timeText) && /^[A-Za-z]+$/.test(text)) typed.add(`${text}/${timeText}`)
+  }
+  const scope = { units, values, typed: [...typed], spell: (key: string) => spellings.get(key) ?? key }
   for (const helper of orderedHelpers) {
     units.set(helper.key, new UnitCheck(helper, scope, warnings).of(helper.expression))
     values.set(helper.key, constantValue(helper.expression, values))
@@ -53,6 +64,8 @@ export function checkUnits(
 interface Scope {
   units: ReadonlyMap<string, Unit | null>
   values: ReadonlyMap<string, number | null>
+  /** Spellings of units in the tables, which messages use. */
+  typed: readonly string[]
   spell: (key: string) => string
 }
 
@@ -105,7 +118,13 @@ class UnitCheck {
     if (found.every((term) => term.unit && sameUnit(term.unit, agreed))) {
       const whole = terms.length === 1 ? first.expression : expression
       const left = `d${this.statement.symbol}/dt`
-      if (needed && !sameUnit(agreed, needed)) this.tell(whole, agreed, needed, `${left} is in ${formatUnit(needed)}`)
+      if (needed && !sameUnit(agreed, needed))
+        this.tell(
+          whole,
+          agreed,
+          needed,
+          sameUnit(needed, pure) ? `${left} is a pure number` : `${left} is in ${this.format(needed)}`,
+        )
     } else if (needed && found.some((term) => term.unit && sameUnit(term.unit, needed))) {
       this.blame(found, needed)
     } else this.blame(found, agreed)
@@ -134,10 +153,23 @@ class UnitCheck {
     const { operator, left, right } = expression
     if (operator === '+' || operator === '-') return this.together(this.terms(expression))
     if (operator === '^') return this.power(left, right)
-    const a = this.of(left)
-    const b = this.of(right)
-    if (!a || !b) return null
-    return operator === '*' ? times(a, b) : over(a, b)
+    return this.product(expression)
+  }
+
+  // A product may be a thousand factors long: it is walked, not descended into.
+  private product(expression: Expression): Unit | null {
+    const steps: { divided: boolean; unit: Unit | null }[] = []
+    let at = expression
+    while (at.kind === 'binary' && (at.operator === '*' || at.operator === '/')) {
+      steps.push({ divided: at.operator === '/', unit: this.of(at.right) })
+      at = at.left
+    }
+    let result = this.of(at)
+    for (const { divided, unit } of steps.reverse()) {
+      if (result && unit) result = divided ? over(result, unit) : times(result, unit)
+      else result = null
+    }
+    return result
   }
 
   private power(base: Expression, exponent: Expression): Unit | null {
@@ -188,21 +220,29 @@ class UnitCheck {
     for (const { expression, unit } of terms) {
       if (!unit || sameUnit(unit, needed) || told.some((before) => sameUnit(before, unit))) continue
       told.push(unit)
-      this.tell(expression, unit, needed, `the other terms are in ${formatUnit(needed)}`)
+      this.tell(
+        expression,
+        unit,
+        needed,
+        sameUnit(needed, pure) ? 'the other terms are pure numbers' : `the other terms are in ${this.format(needed)}`,
+      )
     }
   }
 
+  private format(unit: Unit): string {
+    return formatUnit(unit, this.scope.typed)
+  }
+
   private tell(expression: Expression, found: Unit, needed: Unit, why: string): void {
+    if (this.warnings.length >= mostWarnings) return
     const text = quoted(expressionText(expression, this.scope.spell))
-    const scale = Number((found.factor / needed.factor).toPrecision(4))
-    const kind = sameKind(found, needed)
-      ? ` They differ in scale by ${scale >= 1 ? scale : `1/${Number((1 / scale).toPrecision(4))}`}.`
-      : ''
+    const scale = found.factor / needed.factor
+    const times = String(Number((scale >= 1 ? scale : 1 / scale).toPrecision(4)))
+    const kind = sameKind(found, needed) ? ` The scale differs by a factor of ${times}.` : ''
     const line = firstToken(expression, this.statement.places)?.line ?? this.statement.line
-    this.warnings.push({
-      code: 'unit-mismatch',
-      message: `${text} is in ${formatUnit(found)}, but ${why}.${kind}`,
-      line,
-    })
+    const unit = sameUnit(found, pure) ? 'a pure number' : `in ${this.format(found)}`
+    const message = `${text} is ${unit}, but ${why}.${kind}`
+    const told = this.warnings.some((warning) => warning.line === line && warning.message === message)
+    if (!told) this.warnings.push({ code: 'unit-mismatch', message, line })
   }
 }
