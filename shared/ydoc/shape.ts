@@ -27,10 +27,22 @@ export type ParameterCell = (typeof parameterCells)[number]
 export type StateCell = (typeof stateCells)[number]
 export type SettingKey = (typeof settingKeys)[number]
 
+/** The equation block. */
 export const equationsOf = (doc: Y.Doc): Y.Text => doc.getText('equations')
+/** The parameter table: row id → row. */
 export const parametersOf = (doc: Y.Doc): Y.Map<Y.Map<string>> => doc.getMap('parameters')
+/** The state table: row id → row. */
 export const statesOf = (doc: Y.Doc): Y.Map<Y.Map<string>> => doc.getMap('states')
+/** Title, summary, control, observed quantity and so on. */
 export const settingsOf = (doc: Y.Doc): Y.Map<string> => doc.getMap('settings')
+
+/** Gives every root its type. Yjs keeps a root that an update names first without one, and then it cannot be read. */
+export function prepareRoots(doc: Y.Doc): void {
+  equationsOf(doc)
+  parametersOf(doc)
+  statesOf(doc)
+  settingsOf(doc)
+}
 
 /** A row of a table as it stands, with its id. */
 export type TableRow<Cell extends string> = { id: string; order: string } & Record<Cell, string>
