@@ -4,7 +4,7 @@ import type { ModelError } from './errors.ts'
 import type { Definition, ModelSystem } from './expression.ts'
 import { orderHelpers } from './helper-order.ts'
 import { foldSymbol, quoted } from './symbols.ts'
-import { checkRange, type ModelTables, mostParameters, mostStates, readSymbols, type TableSymbols } from './tables.ts'
+import { checkRange, type ModelTables, readSymbols, rowsFault, type TableSymbols } from './tables.ts'
 import { checkUnits } from './units.ts'
 
 /** Outcome of `assemble`: the system where nothing is wrong, every fault otherwise; the block either way. */
@@ -24,16 +24,10 @@ const fieldName = { control: 'control parameter', secondControl: 'second control
 export function assemble(tables: ModelTables): Assembled {
   const errors: ModelError[] = []
   const { parameters, states } = tables
-  const tooMany = (rows: readonly unknown[] | null, most: number, path: string, what: string) => {
-    if (!rows || rows.length <= most) return false
-    errors.push({ code: 'too-large', message: `A model may have ${most} ${what}; this one has ${rows.length}.`, path })
-    return true
-  }
-  const large = [
-    tooMany(states, mostStates, 'states', 'states'),
-    tooMany(parameters, mostParameters, 'parameters', 'parameters'),
-  ]
-  if (large.includes(true)) return { system: null, errors, warnings: [], block: null }
+  const large = [rowsFault(states?.length ?? 0, 'states'), rowsFault(parameters?.length ?? 0, 'parameters')].filter(
+    (fault) => fault !== null,
+  )
+  if (large.length > 0) return { system: null, errors: large, warnings: [], block: null }
 
   const symbols = readSymbols(tables, errors)
   if (states?.length === 0)

@@ -1,6 +1,7 @@
 import type { z } from 'zod'
 import type { ModelError } from './errors.ts'
 import { isRecord, pathText } from './json-guard.ts'
+import { mostErrors } from './sort-errors.ts'
 
 type Issue = z.core.$ZodIssue
 
@@ -31,13 +32,14 @@ const wanted: Record<string, string> = {
 
 /** What a schema found wrong, in the codes and words of the format, each with its path. */
 export function issuesToErrors(issues: readonly Issue[], root: unknown): ModelError[] {
-  return issues.flatMap((issue) => oneIssue(issue, [...issue.path], root))
+  return issues.slice(0, mostErrors).flatMap((issue) => oneIssue(issue, issue.path, root))
 }
 
 function oneIssue(issue: Issue, path: readonly PropertyKey[], root: unknown): ModelError[] {
   const where = pathText(path)
   const value = valueAt(root, path)
-  const name = String(path.at(-1) ?? 'document')
+  const last = path.at(-1)
+  const name = typeof last === 'string' ? last : where
   if (issue.code === 'unrecognized_keys') {
     return issue.keys.map((key) => {
       const inner = pathText([...path, key])
@@ -74,19 +76,14 @@ function oneIssue(issue: Issue, path: readonly PropertyKey[], root: unknown): Mo
         },
       ]
     case 'invalid_union': {
-      // A citation is an id or an object: an object is judged as one.
-      const branch = issue.errors.find(
-        (errors) => isRecord(value) === errors.some((one) => one.path.length > 0 || one.code === 'unrecognized_keys'),
-      )
-      const discriminated = issue.errors.length === 0
-      if (discriminated) {
-        const inner = isRecord(value) && Object.hasOwn(value, name) ? where : where
-        return [{ code: 'wrong-type', message: `${name} is of no kind that is known here.`, path: inner }]
-      }
-      if (isRecord(value) && branch) return branch.flatMap((one) => oneIssue(one, [...path, ...one.path], root))
-      return [
-        { code: 'wrong-type', message: `${name} has to be an id or an object, not ${kindOf(value)}.`, path: where },
-      ]
+      // A citation is an id or an object; an object is judged as one.
+      const asObject = isRecord(value) ? issue.errors.at(-1) : undefined
+      if (asObject) return asObject.flatMap((one) => oneIssue(one, [...path, ...one.path], root))
+      const message =
+        issue.errors.length === 0
+          ? `${name} is of no kind that is known here.`
+          : `${name} has to be an id, not ${kindOf(value)}.`
+      return [{ code: 'wrong-type', message, path: where }]
     }
     default:
       return [{ code: 'wrong-type', message: `${name} cannot be read.`, path: where }]

@@ -2,6 +2,7 @@ import { z } from 'zod'
 import { issuesToErrors } from './document-issues.ts'
 import type { ModelError } from './errors.ts'
 import { guardValue, isRecord, parseJson } from './json-guard.ts'
+import { rowsFault } from './tables.ts'
 
 /**
  * The model document ("brinkbook-model", version 1): what is imported, exported, frozen in a revision and handed to the
@@ -166,6 +167,11 @@ export function readShape(value: Record<string, unknown>, guarded: readonly Mode
   // A value that nests without end or holds __proto__ never reaches the schema.
   if (guarded.some((error) => error.code === 'too-deep' || error.code === 'unknown-field'))
     return { ok: false, errors: [...guarded] }
+  // Nor does a table that is too long: a schema would tell every row of it.
+  const large = (['parameters', 'states'] as const)
+    .map((path) => (Array.isArray(value[path]) ? rowsFault(value[path].length, path) : null))
+    .filter((fault) => fault !== null)
+  if (large.length > 0) return { ok: false, errors: [...guarded, ...large] }
   const parsed = modelDocument.safeParse(value)
   if (!parsed.success) {
     const told = new Set(guarded.map((error) => error.path))

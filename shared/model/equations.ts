@@ -4,7 +4,7 @@ import { checkRightSide } from './grammar.ts'
 import { nameAdviser } from './nearest-names.ts'
 import { parseTree } from './parse-tree.ts'
 import { readStatements, type Statement } from './statements.ts'
-import { isReserved, quoted } from './symbols.ts'
+import { isReserved, printedLook, quoted } from './symbols.ts'
 import type { Place, Token, TokenLine } from './tokens.ts'
 import { utf8Length } from './utf8.ts'
 
@@ -106,6 +106,10 @@ interface LeftSides {
 function collectLeft(read: readonly Statement[], symbols: DeclaredSymbols | null, errors: ModelError[]): LeftSides {
   const sides: LeftSides = { helpers: new Map(), started: new Set(), undeclared: new Map(), refused: new Set() }
   const firstLines = new Map<string, number>()
+  const looks = new Map<string, { key: string; symbol: string }>()
+  for (const [key, symbol] of [...(symbols?.parameters ?? []), ...(symbols?.states ?? [])]) {
+    looks.set(printedLook(symbol), { key, symbol })
+  }
   for (const statement of read) {
     const { kind, key, left } = statement
     if (key === null) continue
@@ -149,6 +153,15 @@ function collectLeft(read: readonly Statement[], symbols: DeclaredSymbols | null
     } else if (symbols?.parameters.has(key)) {
       refuse('assigned-input', `${name} is a parameter: its value stands in the table and cannot be set here.`)
     } else {
+      const look = printedLook(statement.symbol)
+      const twin = looks.get(look)
+      if (twin !== undefined && twin.key !== key) {
+        refuse(
+          'duplicate-symbol',
+          `${name} cannot be told from ${quoted(twin.symbol)} in print. Choose another symbol.`,
+        )
+      }
+      looks.set(look, { key, symbol: statement.symbol })
       sides.helpers.set(key, statement.symbol)
       if (sides.helpers.size === mostHelpers + 1)
         refuse('too-large', `A model may have ${mostHelpers} helper quantities; here begins the next one.`)

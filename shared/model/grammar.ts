@@ -208,7 +208,7 @@ function product(left: Token, right: Token, fault: Fault): void {
     'syntax',
     span(left, right),
     message,
-    left.line === right.line ? [{ label: `Write ${replacement}`, replacement }] : undefined,
+    left.line === right.line && replacement.length <= 80 ? [{ label: `Write ${replacement}`, replacement }] : undefined,
   )
 }
 

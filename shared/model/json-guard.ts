@@ -80,38 +80,51 @@ function placed(text: string, at: number): string {
  */
 export function guardValue(root: unknown): ModelError[] {
   const errors: ModelError[] = []
-  const waiting: { value: unknown; path: PropertyKey[] }[] = [{ value: root, path: [] }]
+  interface Visit {
+    value: unknown
+    step: PropertyKey
+    depth: number
+    parent: Visit | null
+  }
+  // Paths are spelled only for faults: a list may have half a million members.
+  const pathOf = (visit: Visit) => {
+    const path: PropertyKey[] = []
+    for (let at = visit; at.parent; at = at.parent) path.unshift(at.step)
+    return path
+  }
+  const waiting: Visit[] = [{ value: root, step: '', depth: 0, parent: null }]
   for (let at = waiting.pop(); at && errors.length < 100; at = waiting.pop()) {
-    const { value, path } = at
+    const { value, depth } = at
+    const parent = at
     if (typeof value === 'number' && !Number.isFinite(value)) {
-      errors.push({ code: 'not-finite', message: 'This number is too large to be read.', path: pathText(path) })
+      errors.push({ code: 'not-finite', message: 'This number is too large to be read.', path: pathText(pathOf(at)) })
     } else if (typeof value === 'string') {
       if (/\p{Cs}/u.test(value))
         errors.push({
           code: 'bad-character',
           message: 'This text holds half a character (a lone surrogate).',
-          path: pathText(path),
+          path: pathText(pathOf(at)),
         })
     } else if (typeof value === 'object' && value !== null) {
-      if (path.length >= deepestDocument) {
+      if (depth >= deepestDocument) {
         errors.push({
           code: 'too-deep',
           message: `The document nests more than ${deepestDocument} deep.`,
-          path: pathText(path.slice(0, 4)),
+          path: pathText(pathOf(at).slice(0, 4)),
         })
         break
       }
       if (Array.isArray(value))
-        for (let i = value.length - 1; i >= 0; i--) waiting.push({ value: value[i], path: [...path, i] })
+        for (let i = value.length - 1; i >= 0; i--) waiting.push({ value: value[i], step: i, depth: depth + 1, parent })
       else {
         for (const [key, member] of Object.entries(value).reverse()) {
           if (key === '__proto__')
             errors.push({
               code: 'unknown-field',
               message: 'A member called __proto__ is not allowed.',
-              path: pathText([...path, key]),
+              path: pathText([...pathOf(at), key]),
             })
-          else waiting.push({ value: member, path: [...path, key] })
+          else waiting.push({ value: member, step: key, depth: depth + 1, parent })
         }
       }
     }

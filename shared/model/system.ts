@@ -35,7 +35,9 @@ export function checkModel(input: unknown): CheckedModel {
   if (!raw.ok) return raw
   const shape = readShape(raw.value, raw.errors)
   const shapeErrors = shape.ok ? [] : shape.errors
-  if (shapeErrors.some((error) => error.code === 'too-deep')) return { ok: false, errors: sortErrors(shapeErrors) }
+  // What is over a limit is not walked any further.
+  if (shapeErrors.some((error) => error.code === 'too-deep' || error.code === 'too-large'))
+    return { ok: false, errors: sortErrors(shapeErrors) }
   const built: Assembled = assemble(tablesOf(raw.value))
   if (shape.ok && built.system && built.errors.length === 0) {
     return { ok: true, document: shape.document, system: built.system, warnings: built.warnings }

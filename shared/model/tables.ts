@@ -39,6 +39,13 @@ export interface ModelTables {
 export const mostStates = 30
 export const mostParameters = 200
 
+/** The fault of a table with more rows than a model may have, null where it has not. */
+export function rowsFault(rows: number, path: 'parameters' | 'states'): ModelError | null {
+  const most = path === 'states' ? mostStates : mostParameters
+  if (rows <= most) return null
+  return { code: 'too-large', message: `A model may have ${most} ${path}; this one has ${rows}.`, path }
+}
+
 /**
  * Symbols of both tables: key to row. A row whose symbol is refused is in neither; what was typed there is in `refused`, so
  * that uses of it are not told as well.

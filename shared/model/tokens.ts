@@ -206,21 +206,31 @@ function readNumber(text: string, at: number, push: Push, fault: Fault): number 
   const rest = text.slice(end)
   if (rest.startsWith('.') || (/^[0-9]/.test(rest) && literal.includes('.'))) {
     while (/[0-9.]/.test(text.charAt(end))) end += 1
-    fault('syntax', at, end - at, `${text.slice(at, end)} is not a number: it has more than one point.`)
+    fault('syntax', at, end - at, `${quoted(text.slice(at, end))} is not a number: it has more than one point.`)
   } else if (/^0$/.test(literal) && /^[xXbBoO][0-9a-fA-F]/.test(rest)) {
     while (/[0-9A-Za-z_]/.test(text.charAt(end))) end += 1
-    fault('syntax', at, end - at, `${text.slice(at, end)} is not read: numbers are decimal, as in 12.5 or 1.25e1.`)
+    fault(
+      'syntax',
+      at,
+      end - at,
+      `${quoted(text.slice(at, end))} is not read: numbers are decimal, as in 12.5 or 1.25e1.`,
+    )
   } else if (/^[eE](?![A-Za-z0-9_])/.test(rest) && !/[eE]/.test(literal)) {
     end += 1
     fault(
       'syntax',
       at,
       end - at,
-      `${text.slice(at, end)} is not a number: its exponent is missing. A product needs *.`,
+      `${quoted(text.slice(at, end))} is not a number: its exponent is missing. A product needs *.`,
       `${literal}*${text.charAt(end - 1)}`,
     )
   } else if (!Number.isFinite(value)) {
-    fault('not-finite', at, end - at, `${literal} is too large to be a number here (the limit is about 1.8e308).`)
+    fault(
+      'not-finite',
+      at,
+      end - at,
+      `${quoted(literal)} is too large to be a number here (the limit is about 1.8e308).`,
+    )
   }
   push('number', at, end - at, literal, null, Number.isFinite(value) ? value : 0)
   return end
