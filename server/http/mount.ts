@@ -24,6 +24,11 @@ export const endpointOf = (handle: object): AnyEndpoint | null => endpoints.get(
 
 export const createApi = (parts: Omit<Api, 'router'>): Api => ({ ...parts, router: Router({ caseSensitive: true }) })
 
+/** What a handler hands back: the answer's body, or nothing where the contract has none. */
+type Handler<C, R extends z.ZodType> = R extends z.ZodUndefined
+  ? (context: C) => Promise<void>
+  : (context: C) => Promise<z.input<R>> | z.input<R>
+
 const methods = { GET: 'get', POST: 'post', PUT: 'put', PATCH: 'patch', DELETE: 'delete' } as const
 
 /**
@@ -34,7 +39,7 @@ const methods = { GET: 'get', POST: 'post', PUT: 'put', PATCH: 'patch', DELETE: 
 export function mount<P extends z.ZodType, Q extends z.ZodType, B extends z.ZodType, R extends z.ZodType>(
   api: Api,
   endpoint: Endpoint<P, Q, B, R>,
-  handler: (context: HandlerContext<z.output<P>, z.output<Q>, z.output<B>>) => Promise<z.input<R>> | z.input<R>,
+  handler: Handler<HandlerContext<z.output<P>, z.output<Q>, z.output<B>>, R>,
 ): void {
   const readJson = jsonReader(api.limits)
   const serve: RequestHandler = async (request, response) => {

@@ -1,5 +1,6 @@
 import type { Request, RequestHandler } from 'express'
 import { ipKeyGenerator, rateLimit } from 'express-rate-limit'
+import { z } from 'zod'
 import type { Limits } from '#server/limits.ts'
 import { AppError } from './app-error.ts'
 
@@ -16,6 +17,9 @@ const tooMany = (milliseconds: number) => {
   const seconds = Math.max(1, Math.ceil(milliseconds / 1000))
   return new AppError('too-many', `Too many requests. Try again in ${seconds} seconds.`, { retryAfter: seconds })
 }
+
+/** What express-rate-limit leaves on a request that it counted. */
+const countedRequest = z.object({ rateLimit: z.object({ resetTime: z.date() }) })
 
 /** Key of the address a request comes from (an IPv6 network counts as one). */
 export const addressKey = (request: Request): string => ipKeyGenerator(request.ip ?? '')
@@ -54,8 +58,8 @@ export function apiLimit(limits: Limits): RequestHandler {
     legacyHeaders: false,
     keyGenerator: (request) => (request.user ? `person ${request.user.personId}` : `address ${addressKey(request)}`),
     handler: (request, _response, next) => {
-      const resetTime = request.rateLimit?.resetTime
-      next(tooMany(resetTime ? resetTime.getTime() - Date.now() : limits.rate.window))
+      const counted = countedRequest.safeParse(request)
+      next(tooMany(counted.success ? counted.data.rateLimit.resetTime.getTime() - Date.now() : limits.rate.window))
     },
   })
 }
