@@ -33,6 +33,8 @@ export const pages = mysqlTable(
     /** What would be frozen now (revisions.digest), so that a draft can be told from the revision in force; null where it makes no model. */
     draftDigest: varchar('draft_digest', { length: 80 }),
     draftChangedAt: time('draft_changed_at').notNull(),
+    /** draft_changed_at of the state that card, summary, digest and words were computed from; older or null: they are due. */
+    draftCardAt: time('draft_card_at'),
     /** Symbols, meanings and sources to search by: of the draft (members only), and of what is public. */
     draftWords: text('draft_words').notNull().default(''),
     publicWords: text('public_words').notNull().default(''),

@@ -25,6 +25,8 @@ export const problemStatus = {
   'too-large': 413,
   'wrong-content-type': 415,
   'model-refused': 422,
+  /** Pasted BibTeX or CSL-JSON that cannot be read. */
+  'source-refused': 422,
   'needs-if-match': 428,
   'too-many': 429,
   bug: 500,
