@@ -34,8 +34,28 @@ export function createRouter() {
           lazy: async () => ({ Component: (await import('#src/pages/library-page.tsx')).LibraryPage }),
         },
         {
+          path: '/m/:page/:section?',
+          lazy: async () => ({ Component: (await import('#src/pages/model-page.tsx')).ModelPage }),
+        },
+        {
+          path: '/m/:page/rev/:mark',
+          lazy: async () => ({ Component: (await import('#src/pages/revision-page.tsx')).RevisionPage }),
+        },
+        {
           element: <RequireSignIn />,
           children: [
+            {
+              path: '/m/:page/edit',
+              lazy: async () => ({ Component: (await import('#src/pages/model-edit-page.tsx')).ModelEditPage }),
+            },
+            {
+              path: '/reviews',
+              lazy: async () => ({ Component: (await import('#src/pages/reviews-page.tsx')).ReviewsPage }),
+            },
+            {
+              path: '/reviews/:page/:mark',
+              lazy: async () => ({ Component: (await import('#src/pages/review-page.tsx')).ReviewPage }),
+            },
             {
               path: '/new',
               lazy: async () => ({ Component: (await import('#src/pages/new-model-page.tsx')).NewModelPage }),

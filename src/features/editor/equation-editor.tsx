@@ -1,6 +1,7 @@
 import { defaultKeymap, indentWithTab } from '@codemirror/commands'
 import { Compartment, EditorState } from '@codemirror/state'
 import { drawSelection, EditorView, keymap } from '@codemirror/view'
+import './editor.css'
 import { useEffect, useRef } from 'react'
 import { yCollab, yUndoManagerKeymap } from 'y-codemirror.next'
 import type { Awareness } from 'y-protocols/awareness'

@@ -1,0 +1,109 @@
+import { useQuery } from '@tanstack/react-query'
+import { useState } from 'react'
+import type { Page, RevisionHead } from '#shared/api/pages.ts'
+import { modelDocument } from '#shared/model/document.ts'
+import { draftQuery } from '#src/api/drafts.ts'
+import { revisionQuery } from '#src/api/revisions.ts'
+import { useViewer } from '#src/api/session.ts'
+import { sourcesQuery, useRemoveSource, useUnlinkSource } from '#src/api/sources.ts'
+import { FaultText } from '#src/components/field.tsx'
+import { Waiting } from '#src/components/pencil-line.tsx'
+import { AddSource } from '#src/features/citations/add-source.tsx'
+import { LinkSource, type LinkTargets } from '#src/features/citations/link-source.tsx'
+import { SourceList } from '#src/features/citations/source-list.tsx'
+import { announce } from '#src/lib/announce.ts'
+import { ReadFault } from './page-gate.tsx'
+
+/** The draft's sources for members; for everybody else those frozen with the revision shown. */
+export function SourcesSection({ page, shown }: { page: Page; shown: RevisionHead | null }) {
+  if (page.may.includes('source:list')) return <DraftSources page={page} />
+  return shown ? <FrozenSources page={page} mark={shown.mark} /> : null
+}
+
+function FrozenSources({ page, mark }: { page: Page; mark: string }) {
+  const answer = useQuery(revisionQuery(useViewer(), page.code, mark))
+  if (answer.isPending) return <Waiting what="Reading the sources" />
+  if (answer.isError)
+    return <ReadFault error={answer.error} what={`revision ${mark}`} onAgain={() => answer.refetch()} />
+  return (
+    <section aria-labelledby="sources-heading" className="sheet p-5">
+      <h2 id="sources-heading" className="text-subtitle">
+        Sources of revision {mark}
+      </h2>
+      <SourceList sources={answer.data.revision.sources} />
+    </section>
+  )
+}
+
+const symbolsOnly = modelDocument.pick({ equations: true, parameters: true })
+
+function DraftSources({ page }: { page: Page }) {
+  const viewer = useViewer()
+  const sources = useQuery(sourcesQuery(viewer, page.code))
+  const draft = useQuery(draftQuery(viewer, page.code))
+  const remove = useRemoveSource(page.code)
+  const unlink = useUnlinkSource(page.code)
+  const [said, setSaid] = useState('')
+  if (sources.isPending) return <Waiting what="Reading the sources" />
+  if (sources.isError)
+    return <ReadFault error={sources.error} what={`sources of ${page.code}`} onAgain={() => sources.refetch()} />
+  const mayWrite = page.may.includes('source:write')
+  const targets = targetsOf(draft.data?.document)
+  const fault = remove.error ?? unlink.error
+  return (
+    <div className="grid items-start gap-4 bench:grid-cols-[1fr_26rem]">
+      <section aria-labelledby="sources-heading" className="sheet p-5">
+        <h2 id="sources-heading" className="text-subtitle">
+          Sources of the draft
+        </h2>
+        {!mayWrite && page.inReview && (
+          <p className="text-note text-ink-2">
+            A review is under way: sources can be changed again when it is settled.
+          </p>
+        )}
+        {fault && <FaultText>{fault.message}</FaultText>}
+        <SourceList
+          sources={sources.data.sources}
+          onRemove={mayWrite ? (source) => remove.mutate(source.id) : undefined}
+          onUnlink={mayWrite ? (link) => unlink.mutate(link.id) : undefined}
+          renderActs={
+            mayWrite ? (source) => <LinkSource code={page.code} source={source} targets={targets} /> : undefined
+          }
+        />
+      </section>
+      {mayWrite && (
+        <section aria-labelledby="add-heading" className="sheet grid gap-3 p-5">
+          <h2 id="add-heading" className="text-subtitle">
+            Add a source
+          </h2>
+          <AddSource
+            code={page.code}
+            onAdded={() => {
+              setSaid('Source added')
+              announce('Source added')
+            }}
+          />
+          {said && <p className="text-note text-ink-2">{said}</p>}
+        </section>
+      )}
+    </div>
+  )
+}
+
+/** What a source may stand behind: the draft's parameters and its lines that hold a statement. */
+function targetsOf(document: unknown): LinkTargets {
+  const parsed = symbolsOnly.safeParse(typeof document === 'object' && document !== null ? pick(document) : null)
+  if (!parsed.success) return { symbols: [], lines: [] }
+  return {
+    symbols: parsed.data.parameters.map((row) => ({ symbol: row.symbol, meaning: row.meaning ?? '' })),
+    lines: parsed.data.equations
+      .split(/\r?\n/)
+      .map((text, index) => ({ line: index + 1, text: text.trim() }))
+      .filter(({ text }) => text !== '' && !text.startsWith('#')),
+  }
+}
+
+const pick = (document: object) => ({
+  equations: 'equations' in document ? document.equations : undefined,
+  parameters: 'parameters' in document ? document.parameters : undefined,
+})
