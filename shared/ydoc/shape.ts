@@ -47,18 +47,18 @@ export function prepareRoots(doc: Y.Doc): void {
 /** A row of a table as it stands, with its id. */
 export type TableRow<Cell extends string> = { id: string; order: string } & Record<Cell, string>
 
+const asText = (value: unknown): string => (typeof value === 'string' ? value : '')
+const compare = (a: string, b: string) => (a < b ? -1 : a > b ? 1 : 0)
+
+/** Rows in their order; rows that two people put in one place at once stand by id. A cell that is no string reads as blank. */
 function rowsOf<Cell extends string>(table: Y.Map<Y.Map<string>>, cells: readonly Cell[]): TableRow<Cell>[] {
   const rows: TableRow<Cell>[] = []
   for (const [id, row] of table) {
     if (!(row instanceof Y.Map)) continue
-    const read = (cell: string) => {
-      const value: unknown = row.get(cell)
-      return typeof value === 'string' ? value : ''
-    }
-    const entries = cells.map((cell) => [cell, read(cell)] as const)
-    rows.push({ id, order: read('order'), ...Object.fromEntries(entries) } as TableRow<Cell>)
+    const values = Object.fromEntries(cells.map((cell) => [cell, asText(row.get(cell))])) as Record<Cell, string>
+    rows.push({ ...values, id, order: asText(row.get('order')) })
   }
-  return rows.sort((a, b) => (a.order < b.order ? -1 : a.order > b.order ? 1 : a.id < b.id ? -1 : 1))
+  return rows.sort((a, b) => compare(a.order, b.order) || compare(a.id, b.id))
 }
 
 /** Rows of the parameter table in their order. */
@@ -66,33 +66,80 @@ export const parameterRows = (doc: Y.Doc): TableRow<ParameterCell>[] => rowsOf(p
 /** Rows of the state table in their order. */
 export const stateRows = (doc: Y.Doc): TableRow<StateCell>[] => rowsOf(statesOf(doc), stateCells)
 
-/** A string that sorts between two others (either may be absent). Digits of base 36 after a common prefix; never ends in "0". */
+const digits = '0123456789abcdefghijklmnopqrstuvwxyz'
+const middle = digits.charAt(digits.length / 2)
+
+/** What an `order` looks like: the digits of a fraction in base 36, without zeros at its end. */
+export const orderPattern = /^[0-9a-z]*[1-9a-z]$/
+
+/**
+ * An order that sorts after `before` and before `after` (either may be absent). What is no order counts as absent, and
+ * so does `after` where it does not sort after `before`: the result then only sorts after `before`.
+ *
+ * A row put at the end costs one more character only after many (36 in a row), one put between two again and again one
+ * more for each five.
+ */
 export function orderBetween(before: string | undefined, after: string | undefined): string {
-  const digits = '0123456789abcdefghijklmnopqrstuvwxyz'
-  const low = before ?? ''
-  let result = ''
-  for (let i = 0; ; i++) {
-    const a = i < low.length ? digits.indexOf(low.charAt(i)) : 0
-    const bounded = after?.startsWith(result) === true
-    const b = bounded && i < after.length ? digits.indexOf(after.charAt(i)) : bounded ? 0 : 36
-    if (b - a > 1) return result + digits.charAt(a + Math.floor((b - a) / 2))
-    if (bounded && i >= after.length) return `${low}i`
-    result += digits.charAt(a)
+  const low = before !== undefined && orderPattern.test(before) ? before : ''
+  const high = after !== undefined && orderPattern.test(after) && after > low ? after : undefined
+  return high === undefined ? orderAfter(low) : orderWithin(low, high)
+}
+
+function orderAfter(low: string): string {
+  for (let i = 0; i < low.length; i++) {
+    const digit = digits.indexOf(low.charAt(i))
+    if (digit < digits.length - 1) return low.slice(0, i) + digits.charAt(digit + 1)
   }
+  return low + middle
+}
+
+/** low < high as fractions; the first digits they share are kept, then the digit half-way between the two. */
+function orderWithin(low: string, high: string): string {
+  let shared = ''
+  for (let i = 0; ; i++) {
+    const from = Math.max(0, digits.indexOf(low.charAt(i) || '0'))
+    const to = digits.indexOf(high.charAt(i))
+    if (from === to) {
+      shared += digits.charAt(from)
+      continue
+    }
+    if (to - from > 1) return shared + digits.charAt(from + Math.floor((to - from) / 2))
+    // Neighbouring digits: the longer `high` without its tail lies between, else whatever follows `low`.
+    if (high.length > i + 1) return shared + digits.charAt(to)
+    return shared + digits.charAt(from) + orderAfter(low.slice(i + 1))
+  }
+}
+
+/**
+ * The order of a row that is to stand at `index` among rows in their order. Where the rows around share one order, the
+ * new row stands after all that share it.
+ */
+export function orderAt(rows: readonly { order: string }[], index: number): string {
+  const before = rows[index - 1]?.order
+  const after = rows.slice(index).find((row) => before === undefined || row.order > before)?.order
+  return orderBetween(before, after)
+}
+
+/** Orders of so many rows, evenly spread, so that there is room between any two. */
+export function ordersFor(count: number): string[] {
+  const width = Math.ceil(Math.log(count + 1) / Math.log(digits.length)) + 1
+  const step = digits.length ** width / (count + 1)
+  return Array.from({ length: count }, (_, i) =>
+    Math.floor((i + 1) * step)
+      .toString(digits.length)
+      .padStart(width, '0')
+      .replace(/0+$/, ''),
+  )
 }
 
 /** The whole document as plain strings: what the checker (shared/model/draft.ts) and the server read. */
 export function readDraft(doc: Y.Doc): DraftContent {
   const settings = settingsOf(doc)
-  const setting = (key: SettingKey) => {
-    const value: unknown = settings.get(key)
-    return typeof value === 'string' ? value : ''
-  }
   return {
     equations: equationsOf(doc).toString(),
-    parameters: parameterRows(doc),
-    states: stateRows(doc),
-    settings: Object.fromEntries(settingKeys.map((key) => [key, setting(key)])),
+    parameters: parameterRows(doc).map(({ order: _, ...row }) => row),
+    states: stateRows(doc).map(({ order: _, ...row }) => row),
+    settings: Object.fromEntries(settingKeys.map((key) => [key, asText(settings.get(key))])),
   }
 }
 
@@ -100,22 +147,24 @@ export function readDraft(doc: Y.Doc): DraftContent {
 export function writeDraft(doc: Y.Doc, content: DraftContent): void {
   doc.transact(() => {
     equationsOf(doc).insert(0, content.equations)
-    let order: string | undefined
-    const fill = (table: Y.Map<Y.Map<string>>, rows: readonly { id: string }[], cells: readonly string[]) => {
-      order = undefined
-      for (const source of rows) {
-        const values: Record<string, unknown> = { ...source }
-        const row = new Y.Map<string>()
-        order = orderBetween(order, undefined)
-        row.set('order', order)
-        for (const cell of cells) row.set(cell, typeof values[cell] === 'string' ? values[cell] : '')
-        table.set(source.id, row)
-      }
-    }
     fill(parametersOf(doc), content.parameters, parameterCells)
     fill(statesOf(doc), content.states, stateCells)
     const settings = settingsOf(doc)
     settings.set('shape', shapeVersion)
     for (const key of settingKeys) settings.set(key, content.settings[key] ?? '')
   })
+}
+
+function fill<Cell extends string>(
+  table: Y.Map<Y.Map<string>>,
+  rows: readonly ({ id: string } & Partial<Record<Cell, string>>)[],
+  cells: readonly Cell[],
+): void {
+  const orders = ordersFor(rows.length)
+  for (const [index, source] of rows.entries()) {
+    const row = new Y.Map<string>()
+    row.set('order', orders[index] ?? '')
+    for (const cell of cells) row.set(cell, source[cell] ?? '')
+    table.set(source.id, row)
+  }
 }
