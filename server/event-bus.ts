@@ -1,12 +1,15 @@
 /** What other parts of the process may want to know once an act is committed. */
 export type BusEvent =
   | { kind: 'page-changed'; pageId: number }
+  | { kind: 'draft-changed'; pageId: number }
   | { kind: 'person-changed'; personId: number }
   | { kind: 'session-ended'; sessionHash: string }
 
 export interface EventBus {
   /** The page's state, generation or read access, or somebody's role in its group, may have changed. */
   pageChanged(pageId: number): void
+  /** The page's draft or what is attached to it changed: its card is due. */
+  draftChanged(pageId: number): void
   /** The person's epoch, roles or disabled flag may have changed. */
   personChanged(personId: number): void
   /** One session ended: its sockets close. */
@@ -29,6 +32,7 @@ export function createEventBus(report: (error: unknown) => void): EventBus {
   }
   return {
     pageChanged: (pageId) => tell({ kind: 'page-changed', pageId }),
+    draftChanged: (pageId) => tell({ kind: 'draft-changed', pageId }),
     personChanged: (personId) => tell({ kind: 'person-changed', personId }),
     sessionEnded: (sessionHash) => tell({ kind: 'session-ended', sessionHash }),
     subscribe(listener) {

@@ -47,6 +47,18 @@ export const limits = {
     cards: 30,
     cardsAtOnce: 2,
   },
+  compute: {
+    /** Child processes for cards, kept warm. */
+    children: 2,
+    /** One card; then the child is killed. */
+    cardDeadline: 10 * second,
+    citationDeadline: 10 * second,
+    /** Cards that may wait for a child. */
+    waiting: 100,
+    /** A draft's card is computed once it has not changed for so long, and at the latest after `latest`. */
+    settle: 2 * second,
+    latest: 15 * second,
+  },
   idempotencyKeys: { keep: 1 * day },
   ready: { ping: 1 * second },
   /** From the first SIGTERM to the end. */

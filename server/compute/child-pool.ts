@@ -30,7 +30,8 @@ export interface ChildPoolOptions {
 }
 
 export type JobFailure = 'deadline' | 'crashed' | 'failed' | 'queue-full' | 'aborted' | 'closed'
-export type JobOutcome = { ok: true; answer: unknown } | { ok: false; reason: JobFailure }
+/** `message` of a job that failed: what the child threw, a bug. */
+export type JobOutcome = { ok: true; answer: unknown } | { ok: false; reason: JobFailure; message?: string }
 
 export interface ChildPool {
   /**
@@ -122,7 +123,8 @@ export function createChildPool(options: ChildPoolOptions): ChildPool {
       failedStarts = 0
     } else {
       if (slot.running?.id !== parsed.data.id) return
-      finish(slot, 'failed' in parsed.data ? { ok: false, reason: 'failed' } : { ok: true, answer: parsed.data.answer })
+      if ('failed' in parsed.data) finish(slot, { ok: false, reason: 'failed', message: parsed.data.failed })
+      else finish(slot, { ok: true, answer: parsed.data.answer })
       if (slot.done >= recycleAfter || slot.busy >= busyLimit) end(slot)
     }
     next()

@@ -1,17 +1,13 @@
 import type { Request } from 'express'
 import type { Logger } from 'pino'
 import type { Database } from '#drizzle/client.ts'
+import type { Compute } from '#server/compute/compute.ts'
 import type { Config } from '#server/config.ts'
 import type { EventBus } from '#server/event-bus.ts'
 import type { Limits } from '#server/limits.ts'
 import type { GroupContext, PageContext } from '#server/services/page-context.ts'
 import type { Viewer, ViewerPerson } from '#server/services/viewer.ts'
 import type { Limiter } from './rate-limits.ts'
-
-/** Computes cards away from this process (server/compute). */
-export interface Compute {
-  close(): Promise<void>
-}
 
 /** What the whole API is built from; createApp gets it once. */
 export interface Dependencies {

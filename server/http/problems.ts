@@ -24,6 +24,7 @@ const titles: Record<ProblemCode, string> = {
   'too-large': 'Too large',
   'wrong-content-type': 'Wrong type of content',
   'model-refused': 'The model is refused',
+  'source-refused': 'The source cannot be read',
   'needs-if-match': 'If-Match is missing',
   'too-many': 'Too many requests',
   bug: 'Something went wrong here',

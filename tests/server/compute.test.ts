@@ -54,7 +54,7 @@ describe('the pool of child processes', () => {
     const pool = poolOf()
     expect(await pool.run({ act: 'exit' })).toEqual({ ok: false, reason: 'crashed' })
     const { pid } = await echo(pool, 1)
-    expect(await pool.run({ act: 'throw' })).toEqual({ ok: false, reason: 'failed' })
+    expect(await pool.run({ act: 'throw' })).toEqual({ ok: false, reason: 'failed', message: 'no' })
     expect((await echo(pool, 2)).pid).toBe(pid)
   })
 

@@ -1,9 +1,9 @@
 import { pino } from 'pino'
 import { createApp } from '#server/app.ts'
+import type { Compute } from '#server/compute/compute.ts'
 import { type Config, readConfig } from '#server/config.ts'
 import { type BusEvent, createEventBus } from '#server/event-bus.ts'
 import type { ClientSource } from '#server/http/client-files.ts'
-import type { Compute } from '#server/http/context.ts'
 import { createLogger } from '#server/http/logging.ts'
 import { type Limits, limits } from '#server/limits.ts'
 import { freshDatabase } from './database.ts'
@@ -21,7 +21,16 @@ export interface TestAppOptions {
   log?: string[]
 }
 
-const noCompute: Compute = { close: async () => {} }
+/** For tests of what needs no card: every card is refused as if too many waited. */
+const noCompute: Compute = {
+  card: async () => ({ ok: false, reason: 'busy' }),
+  check: async () => ({ ok: false, reason: 'busy' }),
+  citations: {
+    read: async () => ({ ok: false, reason: 'queue-full' }),
+    format: async (items) => items.map(() => null),
+  },
+  close: async () => {},
+}
 
 /** The app on a database of its own, with a clock that the test may move and the events it told. */
 export async function createTestApp(options: TestAppOptions = {}) {
