@@ -258,7 +258,7 @@ function checkName(token: Token, open: boolean, known: KnownNames | null, fault:
 
 function checkArguments(frame: Frame, close: Token, fault: Fault): void {
   const name = frame.call?.key
-  if (frame.call === null || name === undefined || name === null) return
+  if (frame.call === null || !name || !isFunctionName(name)) return
   const count = frame.commas + 1
   const several = name === 'min' || name === 'max'
   if (several && count < 2) fault('syntax', span(frame.call, close), `${name} takes two or more arguments.`)

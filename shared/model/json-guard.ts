@@ -99,7 +99,9 @@ export function guardValue(root: unknown): ModelError[] {
     if (typeof value === 'number' && !Number.isFinite(value)) {
       errors.push({ code: 'not-finite', message: 'This number is too large to be read.', path: pathText(pathOf(at)) })
     } else if (typeof value === 'string') {
-      if (/\p{Cs}/u.test(value))
+      // The equation block tells its own characters, by line and column.
+      const block = depth === 1 && at.step === 'equations'
+      if (!block && /\p{Cs}/u.test(value))
         errors.push({
           code: 'bad-character',
           message: 'This text holds half a character (a lone surrogate).',

@@ -139,6 +139,9 @@ function tokeniseLine(text: string, line: number, errors: ModelError[]): TokenLi
     } else {
       const { message: why, replacement } = characterFault(character)
       fault('bad-character', at, character.length, why, replacement)
+      // Read on as what was meant, so that the rest of the line is judged without it.
+      const meant = single.get(replacement ?? '')
+      if (meant) push(meant.kind, at, character.length, meant.text)
     }
     at += character.length
   }
