@@ -10,6 +10,9 @@ import { requestId } from './http/request-id.ts'
 import { sameSite } from './http/same-site.ts'
 import { securityHeaders } from './http/security-headers.ts'
 import { createSessionGate, type SessionGate } from './http/session.ts'
+import { groupRoutes } from './routes/groups.ts'
+import { linkRoutes } from './routes/links.ts'
+import { peopleRoutes } from './routes/people.ts'
 import { sessionRoutes } from './routes/session.ts'
 
 export interface App {
@@ -24,6 +27,9 @@ export interface App {
 /** Every route of the API. A resource's file is added here and nowhere else. */
 function mountAll(api: Api): void {
   sessionRoutes(api)
+  linkRoutes(api)
+  peopleRoutes(api)
+  groupRoutes(api)
 }
 
 /** The whole of Brinkbook's HTTP without a port. `client` is left out where only the API is wanted. */

@@ -8,8 +8,8 @@ export async function listPrefixes(db: Queryable, groupIds: number[]) {
   return db.select().from(groupPrefixes).where(inArray(groupPrefixes.groupId, groupIds)).orderBy(groupPrefixes.prefix)
 }
 
-/** Groups by name with the person's role in each; only the person's own unless `all`. */
-export async function list(db: Queryable, personId: number, all: boolean) {
+/** Groups by name with the person's role in each: all of them, the person's own, or the one of a slug. */
+export async function list(db: Queryable, personId: number, which: 'all' | 'own' | { slug: string }) {
   const own = and(eq(memberships.groupId, groups.id), eq(memberships.personId, personId))
   const members = db
     .select({ groupId: memberships.groupId, n: count().as('member_count') })
@@ -35,7 +35,9 @@ export async function list(db: Queryable, personId: number, all: boolean) {
     .leftJoin(memberships, own)
     .leftJoin(members, eq(members.groupId, groups.id))
     .leftJoin(standing, eq(standing.groupId, groups.id))
-    .where(all ? undefined : eq(memberships.personId, personId))
+    .where(
+      which === 'all' ? undefined : which === 'own' ? eq(memberships.personId, personId) : eq(groups.slug, which.slug),
+    )
     .orderBy(groups.name)
 }
 
@@ -77,11 +79,6 @@ export async function listInvitations(db: Queryable, groupId: number, now: Date)
     .orderBy(invitations.id)
 }
 
-export async function findById(db: Queryable, id: number) {
-  const [row] = await db.select().from(groups).where(eq(groups.id, id)).limit(1)
-  return row ?? null
-}
-
 /** Locks the group's row until the transaction ends, so that its members change one act at a time. */
 export async function lock(tx: Queryable, id: number): Promise<void> {
   await tx.select({ id: groups.id }).from(groups).where(eq(groups.id, id)).for('update')
@@ -115,17 +112,6 @@ export async function countMaintainers(db: Queryable, groupId: number): Promise<
   return row?.n ?? 0
 }
 
-/** Groups in which a person is the only maintainer whose account is not disabled. */
-export async function listOnlyMaintained(db: Queryable, personId: number): Promise<{ id: number; name: string }[]> {
-  const theirs = await db
-    .select({ id: groups.id, name: groups.name })
-    .from(memberships)
-    .innerJoin(groups, eq(groups.id, memberships.groupId))
-    .where(and(eq(memberships.personId, personId), eq(memberships.role, 'maintainer')))
-  const counted = await Promise.all(theirs.map(async (group) => ({ group, n: await countMaintainers(db, group.id) })))
-  return counted.filter(({ n }) => n === 1).map(({ group }) => group)
-}
-
 export async function setRole(tx: Queryable, groupId: number, personId: number, role: MemberRole): Promise<void> {
   await tx
     .update(memberships)
@@ -141,11 +127,8 @@ export async function removeMembership(tx: Queryable, groupId: number, personId:
   await tx.delete(memberships).where(and(eq(memberships.groupId, groupId), eq(memberships.personId, personId)))
 }
 
-/** Ids of the pages of a group: their sockets must look at roles again. */
-export async function listPageIds(db: Queryable, groupId: number): Promise<number[]> {
-  const rows = await db
-    .select({ id: pages.id })
-    .from(pages)
-    .where(and(eq(pages.groupId, groupId), isNull(pages.removedAt)))
-  return rows.map((row) => row.id)
+/** True where a slug is taken. */
+export async function hasSlug(db: Queryable, slug: string): Promise<boolean> {
+  const rows = await db.select({ id: groups.id }).from(groups).where(eq(groups.slug, slug)).limit(1)
+  return rows.length > 0
 }

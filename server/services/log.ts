@@ -1,6 +1,6 @@
 import { createHash } from 'node:crypto'
 import { z } from 'zod'
-import type { Queryable, Transaction } from '#drizzle/client.ts'
+import type { Database, Queryable, Transaction } from '#drizzle/client.ts'
 import * as queries from '#server/queries/log.ts'
 
 export interface LogEntry {
@@ -69,8 +69,15 @@ export async function record(tx: Transaction, entry: LogEntry): Promise<void> {
 
 export type LogCheck = { ok: true; rows: number } | { ok: false; rows: number; firstBad: number | null; reason: string }
 
-/** Walks the whole chain. A changed, removed or inserted row is found and named; rows cut off at the end are found by the tip. */
-export async function verify(db: Queryable): Promise<LogCheck> {
+/**
+ * Walks the whole chain as it stood at one moment. A changed, removed or inserted row is found and named; rows cut off
+ * at the end are found by the tip.
+ */
+export async function verify(db: Database): Promise<LogCheck> {
+  return db.transaction(walk, { isolationLevel: 'repeatable read', withConsistentSnapshot: true })
+}
+
+async function walk(db: Queryable): Promise<LogCheck> {
   let previousHash = start.hash
   let last = 0
   let rows = 0
