@@ -60,7 +60,9 @@ export function stripGeometry(card: CardSummary, width: number): StripGeometry {
       return { kind, x: toX(onset.p), p: onset.p }
     }
     const other = card.otherEnds.find((candidate) => distance(candidate) <= near)
-    return { kind: other?.kind === 'fold' ? 'turning-point' : (other?.kind ?? 'turning-point'), x, p }
+    // Ground that ends where no limit was found ends with a plain face: no more was checked.
+    const kind = other?.kind === 'fold' ? 'turning-point' : (other?.kind ?? 'box-left')
+    return { kind, x, p }
   }
 
   const stretches = [...card.ground]

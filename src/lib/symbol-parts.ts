@@ -1,43 +1,21 @@
-const greek: Record<string, string> = {
-  alpha: 'α',
-  beta: 'β',
-  gamma: 'γ',
-  delta: 'δ',
-  epsilon: 'ε',
-  zeta: 'ζ',
-  eta: 'η',
-  theta: 'θ',
-  iota: 'ι',
-  kappa: 'κ',
-  lambda: 'λ',
-  mu: 'μ',
-  nu: 'ν',
-  xi: 'ξ',
-  rho: 'ρ',
-  sigma: 'σ',
-  tau: 'τ',
-  upsilon: 'υ',
-  phi: 'φ',
-  chi: 'χ',
-  psi: 'ψ',
-  omega: 'ω',
-  Gamma: 'Γ',
-  Delta: 'Δ',
-  Theta: 'Θ',
-  Lambda: 'Λ',
-  Xi: 'Ξ',
-  Pi: 'Π',
-  Sigma: 'Σ',
-  Upsilon: 'Υ',
-  Phi: 'Φ',
-  Psi: 'Ψ',
-  Omega: 'Ω',
-}
+const greek = new Map(
+  (
+    'alpha α beta β gamma γ delta δ epsilon ε zeta ζ eta η theta θ iota ι kappa κ lambda λ mu μ nu ν xi ξ rho ρ sigma σ ' +
+    'tau τ upsilon υ phi φ chi χ psi ψ omega ω Gamma Γ Delta Δ Theta Θ Lambda Λ Xi Ξ Pi Π Sigma Σ Phi Φ Psi Ψ Omega Ω'
+  )
+    .split(' ')
+    .flatMap((name, index, all) => (index % 2 === 0 ? [[name, all[index + 1] ?? name] as const] : [])),
+)
 
-/** A symbol as it is set in the mathematical italic: spelled-out Greek as its letter, what follows `_` or a trailing number below. */
+/**
+ * A symbol as it is set in the mathematical italic, by the same rules as typeset equations (shared/model/tex-symbol.ts):
+ * spelled-out Greek as its letter, digits at the end and what follows `_` below.
+ */
 export function symbolParts(symbol: string): { base: string; sub: string | null } {
-  const match = /^(.+?)(?:_(.+)|(\d+))?$/.exec(symbol)
-  const base = match?.[1] ?? symbol
-  const sub = match?.[2] ?? match?.[3] ?? null
-  return { base: greek[base] ?? base, sub: sub === null ? null : (greek[sub] ?? sub) }
+  const plain = symbol.normalize('NFKC')
+  const match = /^([^_]*?)([0-9]*)((?:_.*)?)$/su.exec(plain)
+  const head = match?.[1] ?? plain
+  const below = [match?.[2] ?? '', ...(match?.[3] ?? '').split('_')].filter((part) => part !== '')
+  const base = greek.get(head) ?? head
+  return { base, sub: below.length === 0 ? null : below.map((part) => greek.get(part) ?? part).join(',') }
 }

@@ -1,0 +1,23 @@
+import { z } from 'zod'
+
+/** Larger than any model document may be; a file above it is not even read. */
+export const largestFile = 1024 * 1024
+
+const titled = z.object({ title: z.string().trim().min(1).max(120) })
+
+export type ReadFile = { ok: true; document: unknown; title: string | null } | { ok: false; message: string }
+
+/** Text of a file or of the clipboard as a model document. Whether it makes a model is the server's to say; this only reads JSON. */
+export function readModelText(text: string): ReadFile {
+  if (text.trim() === '') return { ok: false, message: 'Choose a file or paste a model document.' }
+  if (text.length > largestFile) return { ok: false, message: 'Larger than 1 MiB. No model document is.' }
+  let document: unknown
+  try {
+    document = JSON.parse(text)
+  } catch (error) {
+    const why = error instanceof Error ? error.message : ''
+    return { ok: false, message: `This is not JSON. ${why}` }
+  }
+  const title = titled.safeParse(document)
+  return { ok: true, document, title: title.success ? title.data.title : null }
+}
