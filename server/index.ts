@@ -2,6 +2,7 @@ import { createServer } from 'node:http'
 import { fileURLToPath } from 'node:url'
 import { createDatabase } from '#drizzle/client.ts'
 import { createApp } from './app.ts'
+import { createCompute } from './compute/compute.ts'
 import { ConfigError, readConfig } from './config.ts'
 import { createEventBus } from './event-bus.ts'
 import type { ClientSource } from './http/client-files.ts'
@@ -23,7 +24,9 @@ async function main(): Promise<void> {
     )
   }
   const events = createEventBus((error) => logger.error({ err: error }, 'a listener failed'))
-  const compute = { close: async () => {} }
+  const compute = createCompute(limits.compute, (event, detail) =>
+    logger.warn({ event, pid: detail.pid }, 'child process ended'),
+  )
 
   const server = createServer({ maxHeaderSize: 16 * 1024 })
   server.headersTimeout = limits.http.headersTimeout

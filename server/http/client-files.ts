@@ -37,6 +37,7 @@ export function clientFiles(config: Config, source: ClientSource): Router {
       : readFileSync(source.html, 'utf8')
   let built: string | undefined
   router.get('/{*path}', async (request, response) => {
+    response.locals.route = 'client'
     if (notAScreen.test(request.path)) throw new AppError('not-found', 'There is nothing at this address.')
     built = source.kind === 'built' ? (built ?? read()) : await source.transform(request.originalUrl, read())
     const nonce = allowNonce(config, response)

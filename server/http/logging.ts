@@ -1,6 +1,8 @@
+import type { IncomingMessage, ServerResponse } from 'node:http'
 import type { RequestHandler } from 'express'
 import { type DestinationStream, type Logger, pino, stdTimeFunctions } from 'pino'
 import { pinoHttp } from 'pino-http'
+import { z } from 'zod'
 import type { Config } from '#server/config.ts'
 import { AppError } from './app-error.ts'
 
@@ -43,30 +45,40 @@ export function createLogger(config: Pick<Config, 'logLevel'>, destination?: Des
 
 /** One line an answer: id, method, route template (never the address itself, which may hold a one-time secret), person, status, time. */
 export function requestLog(logger: Logger): RequestHandler {
-  return pinoHttp({
+  const fields = (request: IncomingMessage, response: ServerResponse, { ms }: { ms?: number }) => ({
+    method: request.method,
+    route: routeOf(response),
+    person: personOf(request),
+    status: response.statusCode,
+    ms,
+  })
+  const handler: RequestHandler = pinoHttp({
     logger,
     genReqId: (request) => request.id,
     quietReqLogger: true,
-    serializers: { req: () => undefined, res: () => undefined, err: errorFields },
+    quietResLogger: true,
+    customAttributeKeys: { reqId: 'requestId', responseTime: 'ms' },
+    serializers: { err: errorFields },
     wrapSerializers: false,
     customLogLevel: (_request, response, error) =>
       error || response.statusCode >= 500 ? 'error' : response.statusCode >= 400 ? 'warn' : 'info',
-    customAttributeKeys: { responseTime: 'ms' },
+    customSuccessObject: fields,
+    customErrorObject: (request, response, _error, given) => fields(request, response, given),
     customSuccessMessage: () => 'answered',
-    customErrorMessage: () => 'failed',
-    customProps: (request, response) => ({
-      requestId: request.id,
-      method: request.method,
-      route: routeOf(request),
-      person: personOf(request),
-      status: response.statusCode,
-    }),
+    customErrorMessage: () => 'answered',
     autoLogging: { ignore: (request) => /^\/(healthz|readyz|assets\/)/.test(request.url ?? '') },
-  }) as RequestHandler
+  })
+  return handler
 }
 
-const routeOf = (request: object): string | undefined => {
-  const { route, baseUrl } = request as { route?: { path?: unknown }; baseUrl?: string }
-  return typeof route?.path === 'string' ? `${baseUrl ?? ''}${route.path}` : undefined
+/** Left on the answer by whoever serves it (mount.ts). */
+const routed = z.object({ locals: z.object({ route: z.string() }) })
+const routeOf = (response: ServerResponse): string | undefined => {
+  const parsed = routed.safeParse({ locals: 'locals' in response ? response.locals : null })
+  return parsed.success ? parsed.data.locals.route : undefined
 }
-const personOf = (request: object): number | undefined => (request as { user?: Express.User }).user?.personId
+const withPerson = z.object({ user: z.object({ personId: z.number() }) })
+const personOf = (request: IncomingMessage): number | undefined => {
+  const parsed = withPerson.safeParse({ user: 'user' in request ? request.user : null })
+  return parsed.success ? parsed.data.user.personId : undefined
+}

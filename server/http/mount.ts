@@ -43,6 +43,7 @@ export function mount<P extends z.ZodType, Q extends z.ZodType, B extends z.ZodT
 ): void {
   const readJson = jsonReader(api.limits)
   const serve: RequestHandler = async (request, response) => {
+    response.locals.route = endpoint.path
     const now = api.now()
     const viewer = await api.gate.loadViewer(request, now)
     const params = readParams(endpoint.params, request.params)
