@@ -49,7 +49,7 @@ export function assemble(tables: ModelTables): Assembled {
 
   const block =
     tables.equations === null ? null : parseBlock(tables.equations, parameters && states ? spelled(symbols) : null)
-  if (block) errors.push(...block.errors)
+  for (const error of block?.errors ?? []) errors.push(error)
   const order = orderHelpers(block?.statements.filter((statement) => statement.kind === 'helper') ?? [])
   if (block && block.lines.length > 0 && !block.errors.some((error) => error.code === 'empty-model')) {
     missingEquations(symbols, block, errors)

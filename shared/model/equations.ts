@@ -81,6 +81,8 @@ export function parseBlock(text: string, symbols: DeclaredSymbols | null): Parse
     if (statement.equals.kind !== 'equals') continue
     const faults = checkRightSide(statement.right, statement.equals, known)
     for (const fault of faults) errors.push(fault)
+    // Beyond the limit there is no model, and trees would only cost time.
+    if (seen.helpers.size > mostHelpers) continue
     if (statement.faulty || faults.length > 0 || statement.key === null || seen.refused.has(statement)) continue
     const tree = parseTree(statement.right, constants)
     if (tree === null) {

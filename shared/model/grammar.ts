@@ -1,8 +1,9 @@
+import { codePointName, greekTwins } from './characters.ts'
 import type { ModelError } from './errors.ts'
 import { type FunctionName, functionNames } from './expression.ts'
 import { nearestNames } from './nearest-names.ts'
 import { span } from './statements.ts'
-import { quoted } from './symbols.ts'
+import { printedLook, quoted } from './symbols.ts'
 import type { Place, Token } from './tokens.ts'
 
 /**
@@ -242,6 +243,12 @@ function checkName(token: Token, open: boolean, known: KnownNames | null, fault:
     )
     return true
   }
+  const look = printedLook(token.text)
+  if (look !== token.text && known.declared.has(look)) {
+    const message = `${quoted(token.text)} is not declared. It holds a Greek letter (${codePointsOf(token.text)}) that looks like a Latin one.`
+    fault('unknown-symbol', token, message, [{ label: `Write ${look}`, replacement: look }])
+    return false
+  }
   const near = known.nearest(key).map((name) => known.declared.get(name) ?? name)
   const derivative = /^d./.test(key) && known.declared.has(key.slice(1))
   const why = derivative
@@ -255,6 +262,12 @@ function checkName(token: Token, open: boolean, known: KnownNames | null, fault:
   )
   return false
 }
+
+const codePointsOf = (text: string) =>
+  [...text]
+    .filter((character) => greekTwins.has(character))
+    .map((character) => codePointName(character.codePointAt(0) ?? 0))
+    .join(', ')
 
 function checkArguments(frame: Frame, close: Token, fault: Fault): void {
   const name = frame.call?.key

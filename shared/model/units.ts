@@ -48,7 +48,12 @@ export function checkUnits(
     typed.add(text)
     if (time && /^[A-Za-z]+$/.test(timeText) && /^[A-Za-z]+$/.test(text)) typed.add(`${text}/${timeText}`)
   }
-  const scope = { units, values, typed: [...typed], spell: (key: string) => spellings.get(key) ?? key }
+  const scope = {
+    units,
+    values,
+    typed: [...typed].sort((a, b) => a.length - b.length),
+    spell: (key: string) => spellings.get(key) ?? key,
+  }
   for (const helper of orderedHelpers) {
     units.set(helper.key, new UnitCheck(helper, scope, warnings).of(helper.expression))
     values.set(helper.key, constantValue(helper.expression, values))
@@ -64,7 +69,7 @@ export function checkUnits(
 interface Scope {
   units: ReadonlyMap<string, Unit | null>
   values: ReadonlyMap<string, number | null>
-  /** Spellings of units in the tables, which messages use. */
+  /** Spellings of units in the tables, shortest first, which messages use. */
   typed: readonly string[]
   spell: (key: string) => string
 }

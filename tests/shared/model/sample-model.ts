@@ -82,7 +82,8 @@ export function evaluate(expression: Expression, values: Readonly<Record<string,
         const args = at.args.map(of)
         const [first = Number.NaN] = args
         if (at.name === 'exprel') return first === 0 ? 1 : Math.expm1(first) / first
-        return Math[at.name](...args)
+        if (at.name === 'min' || at.name === 'max') return Math[at.name](...args)
+        return Math[at.name](first)
       }
     }
   }
