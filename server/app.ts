@@ -10,10 +10,16 @@ import { requestId } from './http/request-id.ts'
 import { sameSite } from './http/same-site.ts'
 import { securityHeaders } from './http/security-headers.ts'
 import { createSessionGate, type SessionGate } from './http/session.ts'
+import { cardRoutes } from './routes/cards.ts'
+import { draftRoutes } from './routes/drafts.ts'
 import { groupRoutes } from './routes/groups.ts'
 import { linkRoutes } from './routes/links.ts'
+import { pageRoutes } from './routes/pages.ts'
 import { peopleRoutes } from './routes/people.ts'
+import { reviewRoutes } from './routes/reviews.ts'
+import { revisionRoutes } from './routes/revisions.ts'
 import { sessionRoutes } from './routes/session.ts'
+import { sourceRoutes } from './routes/sources.ts'
 
 export interface App {
   express: Express
@@ -27,6 +33,12 @@ export interface App {
 /** Every route of the API. A resource's file is added here and nowhere else. */
 function mountAll(api: Api): void {
   sessionRoutes(api)
+  sourceRoutes(api)
+  reviewRoutes(api)
+  revisionRoutes(api)
+  pageRoutes(api)
+  draftRoutes(api)
+  cardRoutes(api)
   linkRoutes(api)
   peopleRoutes(api)
   groupRoutes(api)

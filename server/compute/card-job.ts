@@ -1,8 +1,11 @@
 import { z } from 'zod'
 import { cardSummary } from '#shared/api/pages.ts'
-import { stabilityCard } from '#shared/model/card-document.ts'
+import { type CardPart, stabilityCard } from '#shared/model/card-document.ts'
 import { modelDocument } from '#shared/model/document.ts'
 import { errorCodes } from '#shared/model/errors.ts'
+
+/** What a card on the server holds: cycles are not computed yet, the map is asked for by itself. */
+export const cardParts: readonly CardPart[] = ['steady', 'hopf']
 
 const cells = z.record(z.string(), z.string())
 const draftParameter = z.looseObject({

@@ -2,17 +2,14 @@ import { checkDraft } from '#shared/model/draft.ts'
 import { checkModel } from '#shared/model/system.ts'
 import { analyse } from '#shared/stability/card.ts'
 import { summarise } from '#shared/stability/summary.ts'
-import { type CardAnswer, type CheckAnswer, cardJob } from './card-job.ts'
+import { type CardAnswer, type CheckAnswer, cardJob, cardParts } from './card-job.ts'
 import { serveJobs } from './serve-jobs.ts'
-
-// What a card on the server holds. The map is asked for by itself, cycles are not computed yet.
-const parts = ['steady', 'hopf'] as const
 
 function cardOf(input: unknown): CardAnswer {
   const checked = checkModel(input)
   if (!checked.ok) return checked
   const { document } = checked
-  const result = analyse(document, { parts: [...parts] })
+  const result = analyse(document, { parts: [...cardParts] })
   return result.ok ? { ok: true, document, card: result.card, summary: summarise(document, result.card) } : result
 }
 

@@ -11,6 +11,8 @@ export const shownLine = z.object({
   kind: z.enum(['comment', 'helper', 'equation']),
   tex: z.string().nullable(),
   text: z.string(),
+  /** The comment at its end, without the #. */
+  comment: z.string().optional(),
 })
 export type ShownLine = z.infer<typeof shownLine>
 

@@ -1,0 +1,140 @@
+import { and, desc, eq, isNull, lt, or, sql } from 'drizzle-orm'
+import type { Queryable } from '#drizzle/client.ts'
+import { draftWriters, groupPrefixes, pageCodes, pages, people, revisions } from '#drizzle/schema/index.ts'
+
+export type PageRow = typeof pages.$inferSelect
+export type NewPage = Omit<typeof pages.$inferInsert, 'id'>
+
+/** Locks the page's row until the transaction ends: everything that freezes, settles or begins a draft does this first. */
+export async function lockPage(tx: Queryable, pageId: number): Promise<PageRow | null> {
+  const [row] = await tx.select().from(pages).where(eq(pages.id, pageId)).for('update')
+  return row ?? null
+}
+
+export async function findPage(db: Queryable, pageId: number): Promise<PageRow | null> {
+  const [row] = await db.select().from(pages).where(eq(pages.id, pageId))
+  return row ?? null
+}
+
+export async function findPageByCode(db: Queryable, code: string): Promise<PageRow | null> {
+  const [row] = await db.select().from(pages).where(eq(pages.code, code))
+  return row ?? null
+}
+
+/** Locks a prefix, so that two new pages cannot take one number; the group it belongs to. */
+export async function lockPrefix(tx: Queryable, prefix: string): Promise<number | null> {
+  const [row] = await tx
+    .select({ groupId: groupPrefixes.groupId })
+    .from(groupPrefixes)
+    .where(eq(groupPrefixes.prefix, prefix))
+    .for('update')
+  return row?.groupId ?? null
+}
+
+/** The last number ever given under a prefix; 0 before the first. */
+export async function lastNumber(tx: Queryable, prefix: string): Promise<number> {
+  const [row] = await tx
+    .select({ number: pageCodes.number })
+    .from(pageCodes)
+    .where(eq(pageCodes.prefix, prefix))
+    .orderBy(desc(pageCodes.number))
+    .limit(1)
+  return row?.number ?? 0
+}
+
+export async function insertCode(tx: Queryable, row: typeof pageCodes.$inferInsert): Promise<void> {
+  await tx.insert(pageCodes).values(row)
+}
+
+export async function insertPage(tx: Queryable, row: NewPage): Promise<number> {
+  const [made] = await tx.insert(pages).values(row).$returningId()
+  if (!made) throw new Error('The database gave the new page no id.')
+  return made.id
+}
+
+/** Changes the page's row and raises its version, which is its ETag. */
+export async function changePage(tx: Queryable, pageId: number, changes: Partial<NewPage>): Promise<void> {
+  await tx
+    .update(pages)
+    .set({ ...changes, version: sql`${pages.version} + 1` })
+    .where(eq(pages.id, pageId))
+}
+
+/** What was computed from the draft. Nothing where another generation began since. */
+export async function setDraftCard(
+  db: Queryable,
+  draft: { pageId: number; generation: number },
+  computed: Pick<NewPage, 'draftCardId' | 'draftSummary' | 'draftDigest' | 'draftWords' | 'draftCardAt'>,
+): Promise<void> {
+  await db
+    .update(pages)
+    .set(computed)
+    .where(and(eq(pages.id, draft.pageId), eq(pages.generation, draft.generation)))
+}
+
+/** Title block of a page that never was public: it follows the draft. */
+export async function followDraft(
+  db: Queryable,
+  draft: { pageId: number; generation: number },
+  words: { title?: string; summary: string; field: string },
+): Promise<void> {
+  await db
+    .update(pages)
+    .set(words)
+    .where(and(eq(pages.id, draft.pageId), eq(pages.generation, draft.generation), eq(pages.everPublic, 0)))
+}
+
+/** What is attached to the draft changed: its card, words and digest are due. */
+export async function noteDraftChange(tx: Queryable, pageId: number, now: Date): Promise<void> {
+  await tx.update(pages).set({ draftChangedAt: now }).where(eq(pages.id, pageId))
+}
+
+/** Pages whose draft changed after its card was computed. */
+export async function listDueDrafts(db: Queryable): Promise<number[]> {
+  const rows = await db
+    .select({ id: pages.id })
+    .from(pages)
+    .where(and(isNull(pages.removedAt), or(isNull(pages.draftCardAt), lt(pages.draftCardAt, pages.draftChangedAt))))
+  return rows.map((row) => row.id)
+}
+
+/** Notes a writer of the draft. */
+export async function noteWriter(
+  tx: Queryable,
+  row: { pageId: number; generation: number; personId: number; now: Date },
+): Promise<void> {
+  const { now, ...writer } = row
+  await tx
+    .insert(draftWriters)
+    .values({ ...writer, first: now, last: now })
+    .onDuplicateKeyUpdate({ set: { last: now } })
+}
+
+/** Who wrote in a draft, in the order they began. */
+export async function listWriters(
+  db: Queryable,
+  pageId: number,
+  generation: number,
+): Promise<{ id: number; name: string }[]> {
+  return db
+    .select({ id: people.id, name: people.name })
+    .from(draftWriters)
+    .innerJoin(people, eq(people.id, draftWriters.personId))
+    .where(and(eq(draftWriters.pageId, pageId), eq(draftWriters.generation, generation)))
+    .orderBy(draftWriters.first, people.id)
+}
+
+/** How many revisions a page ever had, and how many of them were public. */
+export async function countRevisions(db: Queryable, pageId: number): Promise<{ all: number; public: number }> {
+  const [row] = await db
+    .select({
+      all: sql<number>`count(*)`.mapWith(Number),
+      public:
+        sql<number>`count(case when ${revisions.state} in ('in-force', 'superseded', 'withdrawn') then 1 end)`.mapWith(
+          Number,
+        ),
+    })
+    .from(revisions)
+    .where(eq(revisions.pageId, pageId))
+  return row ?? { all: 0, public: 0 }
+}
