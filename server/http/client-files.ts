@@ -3,6 +3,7 @@ import path from 'node:path'
 import express, { type RequestHandler, Router } from 'express'
 import type { Config } from '#server/config.ts'
 import { AppError } from './app-error.ts'
+import { nothingHere } from './problems.ts'
 import { allowNonce } from './security-headers.ts'
 
 /** The client: either the built files, or the bundler of the development server. */
@@ -18,12 +19,13 @@ export type ClientSource =
 /** What index.html holds where the nonce belongs. */
 const noncePlaceholder = '%CSP_NONCE%'
 
-/** Addresses that are never a screen of the client. */
-const notAScreen = /^\/(api|collab|assets|healthz|readyz)(\/|$)|\/\.|\.[a-z0-9]{1,5}$/i
+/** Addresses that are never a screen of the client (one may end in a revision's mark, 2.1.0). */
+const notAScreen = /^\/(api|collab|assets|healthz|readyz)(\/|$)|\/\.|\.[a-z][a-z0-9]{1,4}$/i
 
 /** Every address of the client answers index.html with a nonce of its own, never kept; built assets carry a hash and are kept for good. */
 export function clientFiles(config: Config, source: ClientSource): Router {
   const router = Router()
+  router.use('/index.html', nothingHere)
   if (source.kind === 'bundler') router.use(source.middleware)
   else {
     const assets = path.join(source.directory, 'assets')

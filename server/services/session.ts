@@ -39,7 +39,10 @@ export async function begin(
   input: { personId: number; sessionHash: string; userAgent: string; now: Date; requestId: string },
 ): Promise<void> {
   const { personId, sessionHash, now, requestId } = input
-  const userAgent = input.userAgent.replace(/[^\x20-\x7e]/g, ' ').slice(0, 200)
+  const userAgent = input.userAgent
+    .replace(/[^\x21-\x7e]+/g, ' ')
+    .trim()
+    .slice(0, 200)
   await db.transaction(async (tx) => {
     await queries.insertSignIn(tx, { personId, sessionHash, at: now, lastSeen: now, userAgent })
     await record(tx, { at: now, personId, act: 'session:begin', target: `person ${personId}`, requestId })
