@@ -35,6 +35,17 @@ export class ApiProblem extends Error {
   }
 }
 
+/** What the server says of one field; null where the error is of another kind or names other fields. */
+export function fieldFault(error: unknown, path: string): string | null {
+  return error instanceof ApiProblem ? error.of(path) : null
+}
+
+/** The error's own message, but not where its fields say it already. */
+export function generalFault(error: Error | null, ...paths: string[]): string | null {
+  if (error === null || paths.some((path) => fieldFault(error, path) !== null)) return null
+  return error.message
+}
+
 /** True for what may pass by itself: no answer, or an answer of the 5xx kind. */
 export function mayPass(error: unknown): boolean {
   return error instanceof ApiProblem && (error.code === 'network' || error.status >= 500)

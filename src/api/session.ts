@@ -8,6 +8,7 @@ import {
   signOut,
   signOutEverywhere,
 } from '#shared/api/session.ts'
+import { keepBrowserChoices } from '#src/lib/browser-choices.ts'
 import { call } from './client.ts'
 import { keys } from './keys.ts'
 
@@ -48,6 +49,7 @@ export function useSignIn() {
 function useEndSession() {
   const queryClient = useQueryClient()
   return () => {
+    keepBrowserChoices()
     const before = queryClient.getQueryData<SessionState>(keys.session)
     queryClient.clear()
     queryClient.setQueryData<SessionState>(keys.session, { me: null, demonstration: before?.demonstration ?? null })

@@ -32,7 +32,7 @@ export function EdgeStrip({ card, width = 200, faded = false }: EdgeStripProps) 
       className={`block h-auto max-w-full ${faded ? 'opacity-45' : ''}`}
     >
       <pattern id={id} width="6" height="6" patternUnits="userSpaceOnUse" patternTransform="rotate(45)">
-        <path d="M0 0V6" className="hatch-line" />
+        <path d="M3 0V6" className="hatch-line" strokeWidth="0.6" />
       </pattern>
       {strip.ground.map((piece) => (
         <path key={piece.left.x} d={piece.outline} fill={`url(#${id})`} />

@@ -20,7 +20,8 @@ interface FieldParts {
   labelHidden?: boolean
 }
 
-const box =
+/** The look of a field; its edge is the caller's: `border-line`, or `border-fault` with a fault. */
+export const fieldBox =
   'w-full min-h-11 rounded-control border bg-well px-2.5 text-body text-ink bench:min-h-8 read-only:text-ink-2 disabled:text-ink-3'
 
 /** Wires label, hint and fault to a control; `render` gets the attributes that do it. */
@@ -64,7 +65,7 @@ export function Field({ label, hint, error, labelHidden, className, figures = fa
         <input
           {...rest}
           {...wiring}
-          className={classes(box, error ? 'border-fault' : 'border-line', figures && 'figures text-note')}
+          className={classes(fieldBox, error ? 'border-fault' : 'border-line', figures && 'figures text-note')}
         />
       )}
     />
@@ -87,7 +88,7 @@ export function TextField({ label, hint, error, labelHidden, className, figures 
           rows={4}
           {...rest}
           {...wiring}
-          className={classes(box, 'py-2', error ? 'border-fault' : 'border-line', figures && 'figures text-note')}
+          className={classes(fieldBox, 'py-2', error ? 'border-fault' : 'border-line', figures && 'figures text-note')}
         />
       )}
     />

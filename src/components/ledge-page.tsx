@@ -1,4 +1,4 @@
-import type { ReactNode } from 'react'
+import { type ReactNode, useId } from 'react'
 import { Mark } from './mark.tsx'
 
 /** A screen that stands alone: one sheet on a ledge, another beside it on the ground where there is room. */
@@ -6,7 +6,7 @@ export function LedgePage({ children, beside }: { children: ReactNode; beside?: 
   return (
     <main className="flex flex-1 flex-col">
       <div className="mt-auto grid items-end pt-8 bench:grid-cols-[1fr_400px_1fr] bench:pt-16">
-        <div className="sheet relative z-10 mx-auto w-[min(400px,100%-2rem)] px-6 py-8 tablet:px-8 bench:col-start-2">
+        <div className="sheet relative z-10 mx-auto w-[min(400px,100%-2rem)] px-6 py-8 tablet:px-8 bench:col-start-2 bench:w-full">
           <p className="mb-5 flex items-center gap-3.5">
             <Mark size={44} />
             <span className="text-[2rem] leading-9 font-[720]">Brinkbook</span>
@@ -18,8 +18,12 @@ export function LedgePage({ children, beside }: { children: ReactNode; beside?: 
         )}
       </div>
       <div className="ledge" aria-hidden>
-        <div className="ledge-lip" />
-        <div className="ledge-ground" />
+        <div className="ledge-lip">
+          <Hatch />
+        </div>
+        <div className="ledge-ground">
+          <Hatch />
+        </div>
         <div className="ledge-underside" />
         <div className="ledge-void" />
       </div>
@@ -28,5 +32,17 @@ export function LedgePage({ children, beside }: { children: ReactNode; beside?: 
         A model result. Not a clearance, certificate or operating limit.
       </p>
     </main>
+  )
+}
+
+function Hatch() {
+  const id = useId()
+  return (
+    <svg aria-hidden>
+      <pattern id={id} width="7" height="7" patternUnits="userSpaceOnUse" patternTransform="rotate(45)">
+        <path d="M3.5 0V7" className="hatch-line" />
+      </pattern>
+      <rect width="100%" height="100%" fill={`url(#${id})`} />
+    </svg>
   )
 }

@@ -1,6 +1,6 @@
 import { Link } from 'react-router-dom'
 import type { PageRow } from '#shared/api/pages.ts'
-import { frequencyText, onsetText, otherLimit, unitText } from '#src/lib/onset-figures.ts'
+import { frequencyText, onsetText, otherLimit, standsOnGround, unitText } from '#src/lib/onset-figures.ts'
 import { rowNote } from '#src/lib/row-note.ts'
 import { momentWithOffset } from '#src/lib/times.ts'
 import { EdgeStrip } from './edge-strip.tsx'
@@ -53,7 +53,7 @@ export function ModelRow({
           <p className="text-note text-ink-2">No verdict yet</p>
         )}
       </div>
-      <div className="of-kind">{card && <OnsetWord kind={card.kind} />}</div>
+      <div className="of-kind">{card && <Kind card={card} />}</div>
       <div className="of-value min-w-0">{card && <Value card={card} />}</div>
       <div className="of-frequency">{card && <Frequency card={card} />}</div>
       <div className="of-state" title={`Changed ${momentWithOffset(row.changedAt)}`}>
@@ -71,22 +71,30 @@ export function ModelRow({
 
 type Card = NonNullable<PageRow['card']>
 
+/** A page without an onset that loses its steady running all the same must not look like firm ground. */
+function Kind({ card }: { card: Card }) {
+  if (card.kind !== 'none') return <OnsetWord kind={card.kind} />
+  const other = otherLimit(card)
+  if (other) return <OnsetWord kind="undecided" word={capital(other.word)} />
+  if (!standsOnGround(card)) return <OnsetWord kind="undecided" word="Not steady" />
+  return <OnsetWord kind="none" />
+}
+
+const capital = (word: string) => word.charAt(0).toUpperCase() + word.slice(1)
+
 function Value({ card }: { card: Card }) {
   const onset = card.main === null ? undefined : card.onsets[card.main]
-  const other = onset ? null : otherLimit(card)
-  const figure = onset ? onsetText(onset) : (other?.text ?? 'none')
-  const falling = onset?.direction === -1
+  const figure = onset ? onsetText(onset) : (otherLimit(card)?.text ?? null)
   return (
     <>
       <p>
         <span className="sr-only">Loses stability at </span>
-        <span className="figures text-[1.0625rem] font-[480]">{figure}</span>
-        {figure !== 'none' && <span className="ml-1 text-note">{unitText(card.control.unit)}</span>}
+        <span className="figures text-[1.0625rem] font-[480]">{figure ?? (standsOnGround(card) ? 'none' : '–')}</span>
+        {figure !== null && <span className="ml-1 text-note">{unitText(card.control.unit)}</span>}
       </p>
       <p className="hidden text-note text-ink-2 tablet:block">
-        {other && `${other.word}, `}
         {card.control.meaning}
-        {falling && ', falling'} <ModelSymbol name={card.control.symbol} />
+        {onset?.direction === -1 && ', falling'} <ModelSymbol name={card.control.symbol} />
       </p>
     </>
   )

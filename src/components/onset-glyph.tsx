@@ -76,12 +76,12 @@ export const kindWord: Record<GlyphKind, string> = {
   split: 'Hard or soft',
 }
 
-/** Glyph and word together, in the hue of the kind. */
-export function OnsetWord({ kind, size = 20 }: { kind: GlyphKind; size?: number }) {
+/** Glyph and word together, in the hue of the kind. `word` where the kind's own does not say it all. */
+export function OnsetWord({ kind, size = 20, word }: { kind: GlyphKind; size?: number; word?: string }) {
   return (
     <span className="inline-flex items-center gap-2">
       <OnsetGlyph kind={kind} size={size} />
-      <span className={`font-[620] ${kind === 'none' ? 'text-ink-2' : hue[kind]}`}>{kindWord[kind]}</span>
+      <span className={`font-[620] ${kind === 'none' ? 'text-ink-2' : hue[kind]}`}>{word ?? kindWord[kind]}</span>
     </span>
   )
 }

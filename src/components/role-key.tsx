@@ -13,7 +13,7 @@ const acts = [
 /** What each role allows, once, as a key beside every list of people. */
 export function RoleKey() {
   return (
-    <section className="sheet self-start">
+    <section className="sheet min-w-0 self-start">
       <h2 className="px-4 pt-3 font-[680]">What a role allows</h2>
       <Table caption="What a role allows">
         <TableHead
@@ -25,7 +25,7 @@ export function RoleKey() {
         <tbody>
           {memberRoles.map((role) => (
             <Row key={role}>
-              <th scope="row" className="px-4 py-2 text-left font-[400]">
+              <th scope="row" className="px-2.5 py-2 text-left font-[400] tablet:px-4">
                 {roleWord[role]}
               </th>
               {acts.map((act) => (

@@ -22,7 +22,7 @@ export function SectionBar({
 }) {
   return (
     <div className="flex flex-wrap items-center justify-between gap-x-4 gap-y-2">
-      <nav aria-label={label} className="-mx-2 min-w-0 overflow-x-auto px-2 py-2">
+      <nav aria-label={label} className="-mx-2 -my-1 min-w-0 overflow-x-auto px-2 py-2">
         <ul className="flex gap-5">
           {sections.map((section) => (
             <li key={section.to}>

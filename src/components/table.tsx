@@ -34,7 +34,11 @@ export function TableHead({
         {columns.map((column) => {
           const { label, className, hidden } = typeof column === 'string' ? { label: column } : column
           return (
-            <th key={label} scope="col" className={classes('px-4 py-2.5 text-label font-[400] text-ink-2', className)}>
+            <th
+              key={label}
+              scope="col"
+              className={classes('px-2.5 py-2.5 tablet:px-4 text-label font-[400] text-ink-2', className)}
+            >
               {hidden ? <span className="sr-only">{label}</span> : label}
             </th>
           )
@@ -45,7 +49,7 @@ export function TableHead({
 }
 
 export function Cell({ className, ...rest }: ComponentProps<'td'>) {
-  return <td {...rest} className={classes('px-4 py-2 align-middle', className)} />
+  return <td {...rest} className={classes('px-2.5 py-2 align-middle tablet:px-4', className)} />
 }
 
 export function Row({ className, ...rest }: ComponentProps<'tr'>) {

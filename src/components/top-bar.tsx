@@ -60,6 +60,16 @@ export function TopBar({ places, search, account }: TopBarProps) {
         </nav>
         <div className="ml-auto flex items-center gap-3">
           {search && <FindField />}
+          {search && (
+            <Link
+              to="/"
+              state={{ find: true }}
+              aria-label="Find a model"
+              className="grid size-11 place-items-center rounded-control text-ink hover:bg-pencil-tint bench:hidden"
+            >
+              <Search aria-hidden className="size-5" />
+            </Link>
+          )}
           {account}
         </div>
       </div>

@@ -1,5 +1,5 @@
 import type { CardSummary } from '#shared/api/pages.ts'
-import { formatFrequency, formatNumber } from '#shared/stability/numbers.ts'
+import { formatNumber } from '#shared/stability/numbers.ts'
 
 type Onset = CardSummary['onsets'][number]
 
@@ -10,14 +10,26 @@ export function onsetText(onset: Pick<Onset, 'p' | 'direction'>): string {
   return formatNumber(onset.p, { digits: warranted, rounding: onset.direction > 0 ? 'down' : 'up' })
 }
 
-/** Frequency at an onset, in mHz below 0.1 Hz; per the model's own time where that is no unit of time. */
+// As in shared/stability/numbers.ts; any other time of a model has no hertz.
+const secondsIn = new Map([
+  ['ms', 1e-3],
+  ['s', 1],
+  ['min', 60],
+  ['h', 3600],
+  ['d', 86_400],
+])
+
+/** Frequency at an onset in the unit that keeps its figures short: kHz, Hz, mHz, or per day; else per the model's own time. */
 export function frequencyText(omega: number, timeUnit: string): { figure: string; unit: string } {
-  const text = formatFrequency(omega, timeUnit === '' ? null : timeUnit, { digits: 3 })
-  const [figure = '', ...unit] = text.split(' ')
-  const hertz = text.endsWith(' Hz') ? Number(figure.replace('\u2212', '-')) : Number.NaN
-  if (hertz > 0 && hertz < 0.1) return { figure: formatNumber(hertz * 1000, { digits: 3 }), unit: 'mHz' }
-  if (hertz >= 1000) return { figure: formatNumber(hertz / 1000, { digits: 3 }), unit: 'kHz' }
-  return { figure, unit: unit.join(' ') }
+  const cycles = omega / (2 * Math.PI)
+  const figures = (value: number) => formatNumber(value, { digits: 3 })
+  const seconds = secondsIn.get(timeUnit)
+  if (seconds === undefined) return { figure: figures(cycles), unit: `per ${timeUnit === '' ? 'time unit' : timeUnit}` }
+  const hertz = cycles / seconds
+  if (hertz >= 1000) return { figure: figures(hertz / 1000), unit: 'kHz' }
+  if (hertz >= 0.1) return { figure: figures(hertz), unit: 'Hz' }
+  if (hertz >= 1e-4) return { figure: figures(hertz * 1000), unit: 'mHz' }
+  return { figure: figures(hertz * 86_400), unit: 'per day' }
 }
 
 /** A unit as it stands after a figure; nothing for a pure number. */
@@ -29,7 +41,7 @@ export function otherLimit(card: CardSummary): { text: string; word: string } | 
   const [nearest] = card.otherEnds.toSorted((a, b) => Math.abs(a.p - value) - Math.abs(b.p - value))
   if (!nearest) return null
   const rounding = nearest.p > value ? 'down' : 'up'
-  const word = { fold: 'turning point', 'branch-point': 'branch point', 'box-left': 'leaves its box' }[nearest.kind]
+  const word = { fold: 'turning point', 'branch-point': 'branch point', 'box-left': 'search ends' }[nearest.kind]
   return { text: formatNumber(nearest.p, { digits: warranted, rounding }), word }
 }
 

@@ -1,8 +1,14 @@
 import { remember, remembered } from './storage.ts'
 
+let on = remembered('single-keys') !== 'off'
+
 /** Single-key shortcuts can be switched off (WCAG 2.1.4); on until then. */
-export const singleKeysOn = (): boolean => remembered('single-keys') !== 'off'
-export const setSingleKeys = (on: boolean): void => remember('single-keys', on ? null : 'off')
+export const singleKeysOn = (): boolean => on
+
+export function setSingleKeys(choice: boolean): void {
+  on = choice
+  remember('single-keys', choice ? null : 'off')
+}
 
 /** True where a key is meant for what has the focus: fields, editors, lists of choices, menus, dialogs. */
 export function isTyping(target: EventTarget | null): boolean {

@@ -17,7 +17,7 @@ export function AdminPage() {
   if (!me?.administrator) return <NothingHere what="administration here" />
   if (tab !== 'people' && tab !== 'groups') return <Navigate to="/admin/people" replace />
   return (
-    <main className="grid content-start gap-3 px-4 py-4 tablet:px-6">
+    <main className="grid grid-cols-[minmax(0,1fr)] content-start gap-3 px-4 py-4 tablet:px-6">
       <title>Administration · Brinkbook</title>
       <h1 className="text-title">Administration</h1>
       <SectionBar

@@ -44,7 +44,7 @@ export function GroupPage() {
   const onPeople = section === 'people'
   const maintainers = members.filter((member) => member.role === 'maintainer')
   return (
-    <main className="grid content-start gap-3 px-4 py-3 tablet:px-6">
+    <main className="grid grid-cols-[minmax(0,1fr)] content-start gap-3 px-4 py-3 tablet:px-6">
       <title>{`${name} · Brinkbook`}</title>
       <TitleBlock
         title={name}

@@ -12,7 +12,7 @@ import { roleWord } from '#src/lib/role-words.ts'
 export function GroupsPage() {
   const groups = useQuery(groupsQuery(useViewer()))
   return (
-    <main className="grid content-start gap-4 px-4 py-4 tablet:px-6">
+    <main className="grid grid-cols-[minmax(0,1fr)] content-start gap-4 px-4 py-4 tablet:px-6">
       <title>Groups · Brinkbook</title>
       <h1 className="text-title">Groups</h1>
       {groups.isPending && (
@@ -33,7 +33,7 @@ export function GroupsPage() {
         <StateSheet title="No group yet">A maintainer of a group can hand you an invitation link.</StateSheet>
       )}
       {groups.data && groups.data.groups.length > 0 && (
-        <div className="sheet">
+        <div className="sheet min-w-0">
           <Table caption="Groups">
             <TableHead columns={['Group', 'Letters', 'Models', 'People', 'You are']} />
             <tbody>

@@ -3,7 +3,7 @@ import { type FormEvent, useState } from 'react'
 import { useNavigate, useParams } from 'react-router-dom'
 import { newPassword } from '#shared/api/common.ts'
 import type { OneTimeLink } from '#shared/api/session.ts'
-import { ApiProblem } from '#src/api/api-problem.ts'
+import { ApiProblem, fieldFault, generalFault } from '#src/api/api-problem.ts'
 import { invitationQuery, useAcceptInvitation } from '#src/api/links.ts'
 import { Button } from '#src/components/button.tsx'
 import { FaultText, Field } from '#src/components/field.tsx'
@@ -45,6 +45,7 @@ function AcceptForm({ token, invitation }: { token: string; invitation: OneTimeL
     })
   }
   const wrong = accept.error instanceof ApiProblem && accept.error.code === 'wrong-password'
+  const general = wrong ? null : generalFault(accept.error, 'password', 'name')
   return (
     <form onSubmit={submit} noValidate className="grid gap-3">
       <h1 className="text-subtitle">{invitation.group === null ? 'Invitation' : `Join ${invitation.group}`}</h1>
@@ -60,7 +61,7 @@ function AcceptForm({ token, invitation }: { token: string; invitation: OneTimeL
           label="Name, as it stands under signatures"
           autoComplete="name"
           value={name}
-          error={checked ? nameFault : null}
+          error={checked ? (nameFault ?? fieldFault(accept.error, 'name')) : null}
           onChange={(event) => setName(event.target.value)}
         />
       )}
@@ -77,14 +78,14 @@ function AcceptForm({ token, invitation }: { token: string; invitation: OneTimeL
           wrong
             ? 'Password not right'
             : checked
-              ? (passwordFault ?? (password === '' ? 'Enter your password' : null))
+              ? (passwordFault ?? (password === '' ? 'Enter your password' : fieldFault(accept.error, 'password')))
               : null
         }
         onChange={(event) => setPassword(event.target.value)}
       />
-      {accept.isError && !wrong && (
+      {general !== null && (
         <div role="alert">
-          <FaultText>{accept.error.message}</FaultText>
+          <FaultText>{general}</FaultText>
         </div>
       )}
       <Button type="submit" look="first" pending={accept.isPending} className="mt-2 justify-self-start">

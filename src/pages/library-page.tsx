@@ -35,7 +35,7 @@ export function LibraryPage() {
 
   const facets = <LibraryFacets filters={filters} counts={first?.facets} onChange={change} />
   return (
-    <main className="grid content-start gap-x-7 gap-y-3 px-4 py-4 tablet:px-6 bench:grid-cols-[212px_minmax(0,1fr)]">
+    <main className="grid grid-cols-[minmax(0,1fr)] content-start gap-x-7 gap-y-3 px-4 py-4 tablet:px-6 bench:grid-cols-[212px_minmax(0,1fr)]">
       <title>Library · Brinkbook</title>
       <div className="hidden gap-5 bench:grid bench:content-start">
         <div>

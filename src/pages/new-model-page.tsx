@@ -8,14 +8,14 @@ import { Select } from '#src/components/select.tsx'
 import { StateSheet } from '#src/components/state-sheet.tsx'
 import { BringIn } from '#src/features/new-model/bring-in.tsx'
 import { WriteEquations } from '#src/features/new-model/write-equations.tsx'
+import { useActKey } from '#src/hooks/use-act-key.ts'
 import { announce } from '#src/lib/announce.ts'
-import { newIdempotencyKey } from '#src/lib/idempotency-key.ts'
 
 /** Begins a page: with equations typed from nothing, or with a model document. */
 export function NewModelPage() {
   const groups = (useMe()?.groups ?? []).filter((group) => group.role !== 'reader' && group.prefixes.length > 0)
   return (
-    <main className="grid content-start gap-4 px-4 py-4 tablet:px-6">
+    <main className="grid grid-cols-[minmax(0,1fr)] content-start gap-4 px-4 py-4 tablet:px-6">
       <title>New model · Brinkbook</title>
       {groups.length === 0 ? (
         <StateSheet
@@ -40,21 +40,20 @@ function NewModel({ groups }: { groups: Me['groups'] }) {
   const [slug, setSlug] = useState(groups.find((group) => group.slug === asked)?.slug ?? groups[0]?.slug ?? '')
   const [letters, setLetters] = useState<string | null>(null)
   const [way, setWay] = useState<'write' | 'bring-in' | null>(null)
-  const [key, setKey] = useState(newIdempotencyKey)
+  const keyOf = useActKey()
 
   const prefixes = groups.find((group) => group.slug === slug)?.prefixes ?? []
   const prefix = letters !== null && prefixes.includes(letters) ? letters : (prefixes[0] ?? '')
   const start = (by: 'write' | 'bring-in', body: Pick<NewPage, 'title' | 'summary' | 'field' | 'document'>) => {
     setWay(by)
+    const page = { ...body, group: slug, prefix }
     create.mutate(
-      { ...body, group: slug, prefix, key },
+      { ...page, key: keyOf(page) },
       {
         onSuccess: ({ code }) => {
           announce(`${code} begun`)
           navigate(`/m/${code}/edit`)
         },
-        // What was refused may be changed and sent again: that is another act.
-        onError: () => setKey(newIdempotencyKey()),
       },
     )
   }
@@ -65,7 +64,7 @@ function NewModel({ groups }: { groups: Me['groups'] }) {
   return (
     <>
       <div className="flex flex-wrap items-end gap-x-4 gap-y-2">
-        <h1 className="text-title">New model</h1>
+        <h1 className="basis-full text-title tablet:basis-auto">New model</h1>
         <Select
           label="Kept for"
           className="min-w-56"

@@ -3,6 +3,7 @@ import { useQuery } from '@tanstack/react-query'
 import { useForm } from 'react-hook-form'
 import { useNavigate, useParams } from 'react-router-dom'
 import { finishPasswordLink, type OneTimeLink } from '#shared/api/session.ts'
+import { fieldFault, generalFault } from '#src/api/api-problem.ts'
 import { passwordLinkQuery, useFinishPasswordLink } from '#src/api/links.ts'
 import { Button } from '#src/components/button.tsx'
 import { FaultText, Field } from '#src/components/field.tsx'
@@ -36,6 +37,7 @@ function PasswordForm({ token, link }: { token: string; link: OneTimeLink }) {
       },
     }),
   )
+  const general = generalFault(finish.error, 'password')
   return (
     <form onSubmit={submit} noValidate className="grid gap-3">
       <h1 className="text-subtitle">New password</h1>
@@ -45,12 +47,12 @@ function PasswordForm({ token, link }: { token: string; link: OneTimeLink }) {
         label="New password"
         autoComplete="new-password"
         hint="15 characters or more."
-        error={formState.errors.password?.message ?? null}
+        error={formState.errors.password?.message ?? fieldFault(finish.error, 'password')}
         {...register('password')}
       />
-      {finish.isError && (
+      {general !== null && (
         <div role="alert">
-          <FaultText>{finish.error.message}</FaultText>
+          <FaultText>{general}</FaultText>
         </div>
       )}
       <Button type="submit" look="first" pending={finish.isPending} className="mt-2 justify-self-start">

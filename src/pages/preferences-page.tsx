@@ -29,7 +29,7 @@ export function PreferencesPage() {
     announce('Kept')
   }
   return (
-    <main className="grid content-start gap-4 px-4 py-4 tablet:px-6">
+    <main className="grid grid-cols-[minmax(0,1fr)] content-start gap-4 px-4 py-4 tablet:px-6">
       <title>Preferences · Brinkbook</title>
       <h1 className="text-title">Preferences</h1>
       <div className="grid items-start gap-4 bench:grid-cols-2">

@@ -3,6 +3,7 @@ import { useQuery } from '@tanstack/react-query'
 import { useForm } from 'react-hook-form'
 import { useNavigate, useParams } from 'react-router-dom'
 import { finishSetup } from '#shared/api/session.ts'
+import { fieldFault, generalFault } from '#src/api/api-problem.ts'
 import { setupQuery, useFinishSetup } from '#src/api/links.ts'
 import { Button } from '#src/components/button.tsx'
 import { FaultText, Field } from '#src/components/field.tsx'
@@ -40,7 +41,9 @@ function SetupForm({ token }: { token: string }) {
       },
     }),
   )
-  const fault = (name: keyof typeof formState.errors) => formState.errors[name]?.message ?? null
+  const fault = (name: keyof typeof formState.errors) =>
+    formState.errors[name]?.message ?? fieldFault(finish.error, name)
+  const general = generalFault(finish.error, 'name', 'email', 'password')
   return (
     <form onSubmit={submit} noValidate className="grid gap-3">
       <h1 className="text-subtitle">First administrator</h1>
@@ -61,9 +64,9 @@ function SetupForm({ token }: { token: string }) {
         error={fault('password')}
         {...register('password')}
       />
-      {finish.isError && (
+      {general !== null && (
         <div role="alert">
-          <FaultText>{finish.error.message}</FaultText>
+          <FaultText>{general}</FaultText>
         </div>
       )}
       <Button type="submit" look="first" pending={finish.isPending} className="mt-2 justify-self-start">

@@ -1,12 +1,13 @@
 import { type FormEvent, useState } from 'react'
 import { createGroup } from '#shared/api/groups.ts'
+import { fieldFault, generalFault } from '#src/api/api-problem.ts'
 import { useCreateGroup } from '#src/api/groups.ts'
 import { Button } from '#src/components/button.tsx'
 import { Dialog } from '#src/components/dialog.tsx'
 import { FaultText, Field } from '#src/components/field.tsx'
 import { HandedLink } from '#src/components/handed-link.tsx'
+import { useActKey } from '#src/hooks/use-act-key.ts'
 import { announce } from '#src/lib/announce.ts'
-import { newIdempotencyKey } from '#src/lib/idempotency-key.ts'
 import { prefixesOf } from '#src/lib/prefixes.ts'
 
 /** Lays a group: its name, the letters of its page codes, and its first maintainer, who gets an invitation link. */
@@ -20,7 +21,7 @@ export function AdminNewGroup({ open, onClose }: { open: boolean; onClose: () =>
 
 function NewGroupForm({ onDone }: { onDone: () => void }) {
   const create = useCreateGroup()
-  const [key] = useState(newIdempotencyKey)
+  const keyOf = useActKey()
   const [name, setName] = useState('')
   const [letters, setLetters] = useState('')
   const [maintainerEmail, setMaintainerEmail] = useState('')
@@ -29,10 +30,16 @@ function NewGroupForm({ onDone }: { onDone: () => void }) {
   const parsed = createGroup.body.safeParse({ name, prefixes: prefixesOf(letters), maintainerEmail })
   const fault = (field: string) =>
     checked && !parsed.success ? (parsed.error.issues.find((issue) => issue.path[0] === field)?.message ?? null) : null
+  const taken = parsed.success
+    ? parsed.data.prefixes.map((_, index) => fieldFault(create.error, `prefixes.${index}`))
+    : []
+  const letterFault = taken.find((message) => message !== null) ?? null
+  const general = letterFault === null ? generalFault(create.error, 'name', 'maintainerEmail') : null
   const submit = (event: FormEvent) => {
     event.preventDefault()
     setChecked(true)
-    if (parsed.success) create.mutate({ ...parsed.data, key }, { onSuccess: () => announce('Group laid') })
+    if (parsed.success)
+      create.mutate({ ...parsed.data, key: keyOf(parsed.data) }, { onSuccess: () => announce('Group laid') })
   }
 
   if (create.isSuccess) {
@@ -59,7 +66,7 @@ function NewGroupForm({ onDone }: { onDone: () => void }) {
         spellCheck={false}
         value={letters}
         hint="Two to four capitals each, such as RUN, SHM. They belong to this group for good."
-        error={fault('prefixes')}
+        error={fault('prefixes') ?? letterFault}
         onChange={(event) => setLetters(event.target.value)}
       />
       <Field
@@ -69,9 +76,9 @@ function NewGroupForm({ onDone }: { onDone: () => void }) {
         error={fault('maintainerEmail')}
         onChange={(event) => setMaintainerEmail(event.target.value)}
       />
-      {create.isError && (
+      {general !== null && (
         <div role="alert">
-          <FaultText>{create.error.message}</FaultText>
+          <FaultText>{general}</FaultText>
         </div>
       )}
       <Button type="submit" look="first" pending={create.isPending} className="mt-1 justify-self-start">

@@ -38,10 +38,17 @@ export function AdminPeople() {
     )
   }
   return (
-    <div className="grid gap-4 bench:grid-cols-[minmax(0,1fr)_420px]">
+    <div className="grid grid-cols-[minmax(0,1fr)] gap-4 bench:grid-cols-[minmax(0,1fr)_420px]">
       <div className="sheet min-w-0 self-start">
         <Table caption="People">
-          <TableHead columns={['Person', 'Member of', 'Last signed in', { label: 'Acts', hidden: true }]} />
+          <TableHead
+            columns={[
+              'Person',
+              'Member of',
+              { label: 'Last signed in', className: 'hidden tablet:table-cell' },
+              { label: 'Acts', hidden: true },
+            ]}
+          />
           <tbody>
             {people.data.people.map((person) => (
               <PersonRow key={person.id} person={person} onAct={(kind) => setAct({ person, kind })} />
@@ -67,7 +74,9 @@ function PersonRow({ person, onAct }: { person: Person; onAct: (kind: PersonAct[
     <Row className={person.disabled ? 'text-ink-3' : undefined}>
       <Cell>
         <span className="flex items-center gap-3">
-          <InitialsRing name={person.name} own={own} />
+          <span className="hidden tablet:block">
+            <InitialsRing name={person.name} own={own} />
+          </span>
           <span className="min-w-0">
             <span className="block font-[620] wrap-anywhere">{person.name}</span>
             <span className="block text-note text-ink-2 wrap-anywhere">{person.email}</span>
@@ -92,7 +101,7 @@ function PersonRow({ person, onAct }: { person: Person; onAct: (kind: PersonAct[
           {person.groups.length === 0 && <li className="text-ink-2">no group</li>}
         </ul>
       </Cell>
-      <Cell className="whitespace-nowrap text-ink-2">
+      <Cell className="hidden whitespace-nowrap text-ink-2 tablet:table-cell">
         {person.lastSignIn === null ? (
           'never'
         ) : (

@@ -22,7 +22,7 @@ export function GroupModels({ group }: { group: Group }) {
   const rows = library.data?.pages.flatMap((page) => page.pages) ?? []
   const off = offGround(rows)
   return (
-    <div className="grid gap-4 bench:grid-cols-[minmax(0,1fr)_320px]">
+    <div className="grid grid-cols-[minmax(0,1fr)] gap-4 bench:grid-cols-[minmax(0,1fr)_320px]">
       <div className="grid min-w-0 content-start gap-4">
         {library.isPending && (
           <div className="sheet">

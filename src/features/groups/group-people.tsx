@@ -14,18 +14,26 @@ import { roleOptions, roleWord } from '#src/lib/role-words.ts'
 import { dayOf, momentWithOffset } from '#src/lib/times.ts'
 import { type MemberChange, MemberChangeSheet } from './member-change-sheet.tsx'
 
+/** Columns that a narrow window leaves out. */
+const narrow = 'hidden tablet:table-cell'
+
 const isRole = (value: string): value is MemberRole => memberRoles.some((role) => role === value)
 
 /** Members with their roles, invitations that wait, and what each role allows. */
 export function GroupPeople({ group }: { group: Group }) {
   const [change, setChange] = useState<MemberChange | null>(null)
   return (
-    <div className="grid gap-4 bench:grid-cols-[minmax(0,1fr)_420px]">
+    <div className="grid grid-cols-[minmax(0,1fr)] gap-4 bench:grid-cols-[minmax(0,1fr)_420px]">
       <div className="grid min-w-0 content-start gap-4">
-        <div className="sheet">
+        <div className="sheet min-w-0">
           <Table caption={`People of ${group.name}`}>
             <TableHead
-              columns={['Person', 'Role', 'Since', ...(group.mayInvite ? [{ label: 'Acts', hidden: true }] : [])]}
+              columns={[
+                'Person',
+                'Role',
+                { label: 'Since', className: narrow },
+                ...(group.mayInvite ? [{ label: 'Acts', hidden: true }] : []),
+              ]}
             />
             <tbody>
               {group.members.map((member) => (
@@ -50,14 +58,16 @@ function MemberRow(props: { member: Member; mayChange: boolean; onChange: (chang
     <Row>
       <Cell>
         <span className="flex items-center gap-3">
-          <InitialsRing name={person.name} own={own} />
+          <span className="hidden tablet:block">
+            <InitialsRing name={person.name} own={own} />
+          </span>
           <span className="min-w-0">
             <span className="block font-[620] wrap-anywhere">{person.name}</span>
             <span className="block text-note text-ink-2 wrap-anywhere">{person.email}</span>
           </span>
         </span>
       </Cell>
-      <Cell className="min-w-40">
+      <Cell className="min-w-35">
         {mayChange ? (
           <Select
             label={`Role of ${person.name}`}
@@ -73,14 +83,19 @@ function MemberRow(props: { member: Member; mayChange: boolean; onChange: (chang
           roleWord[role]
         )}
       </Cell>
-      <Cell className="whitespace-nowrap text-ink-2">
+      <Cell className={`whitespace-nowrap text-ink-2 ${narrow}`}>
         <time dateTime={since} title={momentWithOffset(since)}>
           {dayOf(since)}
         </time>
       </Cell>
       {mayChange && (
         <Cell className="text-right">
-          <Button look="quiet" onClick={() => onChange({ member, to: null })} aria-label={`Remove ${person.name}`}>
+          <Button
+            look="quiet"
+            className="max-tablet:px-1"
+            onClick={() => onChange({ member, to: null })}
+            aria-label={`Remove ${person.name}`}
+          >
             Remove
           </Button>
         </Cell>
@@ -92,10 +107,10 @@ function MemberRow(props: { member: Member; mayChange: boolean; onChange: (chang
 function Invitations({ group }: { group: Group }) {
   const revoke = useRevokeInvitation(group.slug)
   return (
-    <section className="sheet">
+    <section className="sheet min-w-0">
       <h2 className="px-4 pt-3 font-[680]">Invited, not here yet</h2>
       <Table caption="Invitations that wait">
-        <TableHead columns={['Person', 'As', 'Until', { label: 'Acts', hidden: true }]} />
+        <TableHead columns={['Person', 'As', { label: 'Until', className: narrow }, { label: 'Acts', hidden: true }]} />
         <tbody>
           {group.invitations.map((invitation) => (
             <Row key={invitation.id}>
@@ -106,7 +121,7 @@ function Invitations({ group }: { group: Group }) {
                 </span>
               </Cell>
               <Cell>{roleWord[invitation.role].toLowerCase()}</Cell>
-              <Cell className="whitespace-nowrap text-ink-2">
+              <Cell className={`whitespace-nowrap text-ink-2 ${narrow}`}>
                 <time dateTime={invitation.expiresAt} title={momentWithOffset(invitation.expiresAt)}>
                   {dayOf(invitation.expiresAt)}
                 </time>

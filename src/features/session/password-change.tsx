@@ -1,7 +1,7 @@
 import { zodResolver } from '@hookform/resolvers/zod'
 import { useForm } from 'react-hook-form'
 import { changePassword } from '#shared/api/session.ts'
-import { ApiProblem } from '#src/api/api-problem.ts'
+import { ApiProblem, fieldFault, generalFault } from '#src/api/api-problem.ts'
 import { useChangePassword, useMe } from '#src/api/session.ts'
 import { Button } from '#src/components/button.tsx'
 import { FaultText } from '#src/components/field.tsx'
@@ -25,6 +25,7 @@ export function PasswordChange({ onDone }: { onDone: () => void }) {
     }),
   )
   const wrong = change.error instanceof ApiProblem && change.error.code === 'wrong-password'
+  const general = wrong ? null : generalFault(change.error, 'next')
   return (
     <form onSubmit={submit} noValidate className="grid gap-3">
       <p className="text-ink-2">Every other session of yours ends. This one goes on.</p>
@@ -40,12 +41,12 @@ export function PasswordChange({ onDone }: { onDone: () => void }) {
         label="New password"
         autoComplete="new-password"
         hint="15 characters or more. Several words are easier to keep than signs."
-        error={formState.errors.next?.message ?? null}
+        error={formState.errors.next?.message ?? fieldFault(change.error, 'next')}
         {...register('next')}
       />
-      {change.isError && !wrong && (
+      {general !== null && (
         <div role="alert">
-          <FaultText>{change.error.message}</FaultText>
+          <FaultText>{general}</FaultText>
         </div>
       )}
       <Button type="submit" look="first" pending={change.isPending} className="mt-1 justify-self-start">
