@@ -1,8 +1,20 @@
 import { useEffect, useState, useSyncExternalStore } from 'react'
 import type { DraftContent } from '#shared/model/draft.ts'
 import { type CardPort, type CardRunner, type CardState, createCardRunner } from './card-runner.ts'
+import type { WorkerReply } from './messages.ts'
 
-const spawn = (): CardPort => new Worker(new URL('./stability.worker.ts', import.meta.url), { type: 'module' })
+function spawn(): CardPort {
+  const worker = new Worker(new URL('./stability.worker.ts', import.meta.url), { type: 'module' })
+  const port: CardPort = {
+    onmessage: null,
+    onerror: null,
+    postMessage: (request) => worker.postMessage(request),
+    terminate: () => worker.terminate(),
+  }
+  worker.onmessage = (event: MessageEvent<WorkerReply>) => port.onmessage?.(event)
+  worker.onerror = (event) => port.onerror?.(event)
+  return port
+}
 
 const idle: CardState = { checked: null, card: null, computing: true, older: false, progress: null, failure: null }
 const never = () => () => undefined
