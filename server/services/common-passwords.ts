@@ -11,6 +11,7 @@ const longest = Math.max(...[...words].map((word) => word.length))
 const disguises: ReadonlyMap<string, string> = new Map(
   Object.entries({ '@': 'a', 4: 'a', 3: 'e', 1: 'i', '!': 'i', 0: 'o', 5: 's', $: 's', 7: 't', '|': 'l' }),
 )
+const squeezed = (text: string) => text.replace(/[^\p{L}\p{N}@$!|]+/gu, '')
 const plain = (text: string) => [...text].map((sign) => disguises.get(sign) ?? sign).join('')
 
 const rows = [
@@ -38,6 +39,7 @@ function runLength(text: string, from: number): number {
  * single signs. The same piece again costs nothing.
  */
 function piecesOf(text: string, extra: ReadonlySet<string>): number {
+  const limit = Math.max(longest, ...[...extra].map((word) => word.length))
   // best[i]: cheapest way to the first i signs, with the pieces used on it.
   const best: ({ cost: number; used: ReadonlySet<string> } | undefined)[] = [{ cost: 0, used: new Set() }]
   for (let from = 0; from < text.length; from++) {
@@ -53,7 +55,7 @@ function piecesOf(text: string, extra: ReadonlySet<string>): number {
     if (run > 2) offer(text.slice(from, from + run))
     const figures = /^\d{1,4}/.exec(text.slice(from, from + 4))?.[0]
     if (figures) offer(figures)
-    for (let length = 3; length <= Math.min(longest, text.length - from); length++) {
+    for (let length = 3; length <= Math.min(limit, text.length - from); length++) {
       const piece = text.slice(from, from + length)
       if (words.has(piece) || extra.has(piece)) offer(piece)
     }
@@ -69,11 +71,11 @@ function piecesOf(text: string, extra: ReadonlySet<string>): number {
  * @param about Words that are common for this person: name, e-mail address.
  */
 export function isCommonPassword(password: string, about: readonly string[]): boolean {
-  const extra = new Set(
-    about.flatMap((text) => text.toLowerCase().split(/[^\p{L}\p{N}]+/u)).filter((w) => w.length > 2),
-  )
+  const given = about.map((text) => text.toLowerCase())
+  const parts = given.flatMap((text) => text.split(/[^\p{L}\p{N}]+/u))
+  const extra = new Set([...parts, ...given, ...given.map(squeezed)].filter((word) => word.length > 2))
   const lower = password.toLowerCase()
-  const bare = lower.replace(/[^\p{L}\p{N}@$!|]+/gu, '')
+  const bare = squeezed(lower)
   const forms = [lower, bare, bare.replace(/[@$!|]+$/, ''), plain(bare), plain(bare.replace(/[\d@$!|]+$/, ''))]
   return forms.some((form) => piecesOf(form, extra) <= 2)
 }
