@@ -7,6 +7,9 @@ import { OnsetMark } from './onset-mark.tsx'
 
 const hue = { soft: 'var(--color-soft)', hard: 'var(--color-hard)', undecided: 'var(--color-open)' } as const
 
+/** Lines at +45 degrees, 5.7 px apart; the corners complete those that cross the tile's edge. */
+const hatchPath = 'M-1 1L1 -1M0 8L8 0M7 9L9 7'
+
 export interface EdgeStripProps {
   card: CardSummary
   /** Width of the range in pixels; the drawing is as wide, and shrinks with its column. */
@@ -31,8 +34,8 @@ export function EdgeStrip({ card, width = 200, faded = false }: EdgeStripProps) 
       width={width + 10}
       className={`block h-auto max-w-full ${faded ? 'opacity-45' : ''}`}
     >
-      <pattern id={id} width="6" height="6" patternUnits="userSpaceOnUse" patternTransform="rotate(45)">
-        <path d="M3 0V6" className="hatch-line" strokeWidth="0.6" />
+      <pattern id={id} width="8" height="8" patternUnits="userSpaceOnUse">
+        <path d={hatchPath} className="hatch-line" strokeWidth="0.8" />
       </pattern>
       {strip.ground.map((piece) => (
         <path key={piece.left.x} d={piece.outline} fill={`url(#${id})`} />

@@ -39,8 +39,8 @@ function Hatch() {
   const id = useId()
   return (
     <svg aria-hidden>
-      <pattern id={id} width="7" height="7" patternUnits="userSpaceOnUse" patternTransform="rotate(45)">
-        <path d="M3.5 0V7" className="hatch-line" />
+      <pattern id={id} width="9" height="9" patternUnits="userSpaceOnUse">
+        <path d="M-1 1L1 -1M0 9L9 0M8 10L10 8" className="hatch-line" strokeWidth="1" />
       </pattern>
       <rect width="100%" height="100%" fill={`url(#${id})`} />
     </svg>
