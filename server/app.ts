@@ -59,7 +59,7 @@ export function createApp(dependencies: Dependencies & { client?: ClientSource }
   app.set('trust proxy', config.trustProxy)
   app.set('query parser', false)
   app.use(requestId(config), requestLog(logger), securityHeaders(config))
-  const readiness: Readiness = { accepting: true }
+  const readiness: Readiness = { accepting: true, checks: [] }
   app.use(health(dependencies, readiness))
   app.use('/api/v1', (_request, response, next) => {
     response.setHeader('Cache-Control', 'no-store')

@@ -4,6 +4,7 @@ import { createDatabase } from '#drizzle/client.ts'
 import { createApp } from './app.ts'
 import { createCompute } from './compute/compute.ts'
 import { ConfigError, readConfig } from './config.ts'
+import { attachEditing } from './editing.ts'
 import { createEventBus } from './event-bus.ts'
 import type { ClientSource } from './http/client-files.ts'
 import { createLogger } from './http/logging.ts'
@@ -43,8 +44,10 @@ async function main(): Promise<void> {
     client = development.source
     closeClient = development.close
   }
-  const app = createApp({ db: database.db, config, limits, events, compute, logger, now: () => new Date(), client })
+  const dependencies = { db: database.db, config, limits, events, compute, logger, now: () => new Date() }
+  const app = createApp({ ...dependencies, client })
   server.on('request', app.express)
+  const editing = attachEditing(server, dependencies, app)
 
   const stop = createStop({
     logger,
@@ -53,8 +56,8 @@ async function main(): Promise<void> {
     refuseNew: () => {
       app.readiness.accepting = false
     },
-    closeSockets: async () => {},
-    release: [closeClient, compute.close, app.close, database.close],
+    closeSockets: editing.closeSockets,
+    release: [closeClient, editing.close, compute.close, app.close, database.close],
     exit: (code) => process.exit(code),
   })
   stopOnSignals(stop, logger)

@@ -60,7 +60,8 @@ export const limits = {
     latest: 15 * second,
   },
   idempotencyKeys: { keep: 1 * day },
-  ready: { ping: 1 * second },
+  /** `unsaved`: edits that wait longer for the database make the process unready. */
+  ready: { ping: 1 * second, unsaved: 5 * second },
   /** From the first SIGTERM to the end. */
   shutdown: { drain: 10 * second },
 }

@@ -6,6 +6,8 @@ import type { Dependencies } from './context.ts'
 /** Set to false when the process is about to end, so that nothing new is sent here. */
 export interface Readiness {
   accepting: boolean
+  /** Everything else that must hold (co-editing saves what is typed). */
+  checks: (() => boolean)[]
 }
 
 async function databaseReady({ db, limits }: Dependencies): Promise<boolean> {
@@ -29,7 +31,8 @@ export function health(dependencies: Dependencies, readiness: Readiness): Router
   }
   router.get('/healthz', (_request, response) => answer(true, response))
   router.get('/readyz', async (_request, response) => {
-    answer(readiness.accepting && (await databaseReady(dependencies)), response)
+    const well = readiness.accepting && readiness.checks.every((check) => check())
+    answer(well && (await databaseReady(dependencies)), response)
   })
   return router
 }

@@ -28,28 +28,47 @@ export interface SessionClaim {
 
 export const anonymous: Viewer = { person: null, siteRole: 'anonymous', sessionHash: null }
 
+export interface SessionTimes {
+  idle: number
+  absolute: number
+  touch: number
+}
+
+/** The sign-in that a claim rests on, if it still stands. */
+async function findStanding(db: Queryable, claim: SessionClaim, now: Date, times: SessionTimes) {
+  const found = await queries.findSignIn(db, claim.personId, claim.sessionHash)
+  if (!found || found.disabled || found.epoch !== claim.epoch || found.endedAt !== null) return null
+  const idle = now.getTime() - found.lastSeen.getTime()
+  if (idle > times.idle || now.getTime() - found.since.getTime() > times.absolute) return null
+  return { ...found, idle }
+}
+
 /**
  * The viewer of a session. Nobody, where the session was ended, is of an older epoch (signed out everywhere, new
  * password, disabled), is idle for an hour or older than twelve hours. Being seen is written at most once a minute.
  */
 export async function loadViewer(
   db: Queryable,
-  input: { claim: SessionClaim | null; now: Date; times?: { idle: number; absolute: number; touch: number } },
+  input: { claim: SessionClaim | null; now: Date; times?: SessionTimes },
 ): Promise<Viewer> {
-  if (!input.claim) return anonymous
-  const times = input.times ?? limits.session
-  const { personId, epoch, sessionHash } = input.claim
-  const found = await queries.findSignIn(db, personId, sessionHash)
-  if (!found || found.disabled || found.epoch !== epoch || found.endedAt !== null) return anonymous
-  const idle = input.now.getTime() - found.lastSeen.getTime()
-  if (idle > times.idle || input.now.getTime() - found.since.getTime() > times.absolute) return anonymous
-  if (idle >= times.touch) await queries.touchSignIn(db, sessionHash, input.now)
-  const { id, name, email, administrator } = found
+  const { claim, now, times = limits.session } = input
+  const found = claim ? await findStanding(db, claim, now, times) : null
+  if (!claim || !found) return anonymous
+  if (found.idle >= times.touch) await queries.touchSignIn(db, claim.sessionHash, now)
+  const { id, name, email, administrator, epoch } = found
   return {
     person: { id, name, email, administrator, epoch },
     siteRole: administrator ? 'administrator' : 'person',
-    sessionHash,
+    sessionHash: claim.sessionHash,
   }
+}
+
+/** Whether a session still stands, without counting the question as activity (an open socket alone is none). */
+export async function isStanding(
+  db: Queryable,
+  input: { claim: SessionClaim; now: Date; times?: SessionTimes },
+): Promise<boolean> {
+  return (await findStanding(db, input.claim, input.now, input.times ?? limits.session)) !== null
 }
 
 /** Frames of the co-editing socket count as activity of their session. */
