@@ -6,6 +6,7 @@
 
 import { type Coverage, none } from '#shared/numerics/interval.ts'
 import type { CompiledModel } from './compiled-model.ts'
+import { createContractor } from './contract.ts'
 import type { ModelSystem } from './expression.ts'
 import { createIntervalRunner } from './interval-tape.ts'
 import { createJetRunner } from './jet.ts'
@@ -20,6 +21,13 @@ export interface TapeModel extends CompiledModel {
    * some, `none` nowhere on it. Existence proofs need `full`.
    */
   coverage(xlo: Float64Array, xhi: Float64Array, plo: Float64Array, phi: Float64Array, jacobian: boolean): Coverage
+  /**
+   * Shrinks the box in place to a part that holds every zero of F at the parameters `p`; false where it is proved to
+   * hold none. Returns through `contractionEffort` what it costs.
+   */
+  contractBox(xlo: Float64Array, xhi: Float64Array, p: Float64Array): boolean
+  /** Interval operations that `contractBox` has done since the model was compiled. */
+  contractionEffort(): number
   /** Sizes, for benchmarks and budgets: instructions of F, and of F and J. */
   readonly instructions: { rhs: number; jacobian: number }
 }
@@ -47,6 +55,7 @@ export function compileModel(system: ModelSystem): TapeModel {
   const kinks = lazy(() => findKinks(graph))
   const lines = lazy(() => nonFiniteLines(graph))
   const valueBounds = lazy(() => createIntervalRunner(values.tape, builder))
+  const contractor = lazy(() => createContractor(values.tape, builder))
   const slopeBounds = lazy(() => createIntervalRunner(both, builder))
 
   return {
@@ -129,6 +138,9 @@ export function compileModel(system: ModelSystem): TapeModel {
         outHi[positions[k] as number] = empty ? Number.POSITIVE_INFINITY : (runner.hi[register] as number)
       }
     },
+
+    contractBox: (xlo, xhi, p) => contractor().contract(xlo, xhi, p),
+    contractionEffort: () => contractor().effort.operations,
 
     coverage: (xlo, xhi, plo, phi, jacobian) => (jacobian ? slopeBounds() : valueBounds()).run(xlo, xhi, plo, phi),
   }

@@ -142,7 +142,7 @@ export function runIntervals(tape: Tape, lo: Float64Array, hi: Float64Array, fro
 }
 
 /** One instruction: register r from registers x, y, z; `n` is the plain second operand of those that have one. */
-function stepInterval(
+export function stepInterval(
   code: number,
   lo: Float64Array,
   hi: Float64Array,
