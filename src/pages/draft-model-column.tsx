@@ -1,0 +1,116 @@
+import { type ReactNode, useMemo, useState } from 'react'
+import { Segments } from '#src/components/segments.tsx'
+import type { DraftConnection } from '#src/features/editor/draft-connection.ts'
+import { EquationEditor } from '#src/features/editor/equation-editor.tsx'
+import { ParameterTable } from '#src/features/editor/parameter-table.tsx'
+import { SettingsFields } from '#src/features/editor/settings-fields.tsx'
+import { StateTable } from '#src/features/editor/state-table.tsx'
+import { useDraftContent } from '#src/features/editor/use-draft-content.ts'
+import { EquationLines, Formula } from '#src/features/revisions/equation-lines.tsx'
+import { shortFigure } from '#src/lib/figures.ts'
+import type { CardState } from '#src/workers/card-runner.ts'
+import { changedSymbols, faultsByPath, messagesOf, valuesOf } from './draft-notes.ts'
+import type { Earlier } from './use-in-force.ts'
+
+export interface DraftModelColumnProps {
+  connection: DraftConnection
+  live: CardState
+  readOnly: boolean
+  earlier: Earlier | null
+}
+
+/** Equations, parameters, states and settings of the draft: what is typed on the left of the co-edit view. */
+export function DraftModelColumn({ connection, live, readOnly, earlier }: DraftModelColumnProps) {
+  const { doc, awareness } = connection
+  const content = useDraftContent(doc)
+  const [shape, setShape] = useState<'typed' | 'typeset'>('typed')
+  const [line, setLine] = useState(1)
+  const checked = live.checked
+  const faults = useMemo(() => faultsByPath(checked?.errors ?? []), [checked])
+  const messages = useMemo(() => messagesOf(live), [live])
+  const values = useMemo(() => valuesOf(live), [live])
+  const names = useMemo(
+    () =>
+      [
+        ...content.parameters.map((row) => ({
+          symbol: row.symbol,
+          detail: [row.meaning, row.value, row.unit].filter(Boolean).join(' '),
+        })),
+        ...content.states.map((row) => ({ symbol: row.symbol, detail: row.meaning || 'state' })),
+        ...(checked?.helpers ?? []).map((symbol) => ({ symbol, detail: 'helper quantity' })),
+      ].filter(({ symbol }) => symbol !== ''),
+    [content.parameters, content.states, checked],
+  )
+  const changed = useMemo(() => changedSymbols(content.parameters, earlier), [content.parameters, earlier])
+  const atCaret = checked?.lines.find((entry) => entry.line === line && entry.tex !== null)
+  const document = live.card?.document
+  const control = document?.parameters.find((row) => row.symbol === document.control)
+  return (
+    <section aria-label="Model" className="sheet grid min-w-0 content-start">
+      <header className="flex flex-wrap items-center justify-between gap-2 px-4 py-2.5">
+        <h2 className="text-subtitle">Equations</h2>
+        <Segments
+          label="How the equations are shown"
+          value={shape}
+          onChange={setShape}
+          options={[
+            { value: 'typed', label: 'Typed' },
+            { value: 'typeset', label: 'Typeset' },
+          ]}
+        />
+        {control && (
+          <span className="text-label text-ink-2">{`values at ${control.symbol} = ${shortFigure(control.value)}`}</span>
+        )}
+      </header>
+      <div hidden={shape !== 'typed'}>
+        <EquationEditor
+          text={doc.getText('equations')}
+          awareness={awareness}
+          readOnly={readOnly}
+          messages={messages}
+          values={values}
+          names={names}
+          onLine={setLine}
+        />
+        <p className="min-h-11 border-b border-rule px-4 py-2">
+          <span className="block text-label text-ink-3">line at the caret</span>
+          {atCaret ? <Formula tex={atCaret.tex} text={atCaret.text} /> : <span className="text-ink-3">–</span>}
+        </p>
+      </div>
+      {shape === 'typeset' && (
+        <div className="bg-well px-4 py-3">
+          <EquationLines
+            lines={(checked?.lines ?? []).map((entry) => ({
+              ...entry,
+              kind: entry.kind === 'unread' ? 'helper' : entry.kind,
+            }))}
+          />
+        </div>
+      )}
+      <Part title="Parameters">
+        <ParameterTable doc={doc} content={content} readOnly={readOnly} faults={faults} changed={changed} />
+      </Part>
+      <Part title="States">
+        <StateTable doc={doc} content={content} readOnly={readOnly} faults={faults} />
+      </Part>
+      <Part title="Settings and notes">
+        <SettingsFields
+          doc={doc}
+          content={content}
+          readOnly={readOnly}
+          faults={faults}
+          helpers={checked?.helpers ?? []}
+        />
+      </Part>
+    </section>
+  )
+}
+
+function Part({ title, children }: { title: string; children: ReactNode }) {
+  return (
+    <section aria-label={title} className="border-t border-rule px-4 py-3">
+      <h2 className="mb-1 text-subtitle">{title}</h2>
+      {children}
+    </section>
+  )
+}
