@@ -1,3 +1,4 @@
+import { readFileSync } from 'node:fs'
 import type { MemberRole, ReadAccess } from '#shared/api/roles.ts'
 
 /**
@@ -144,6 +145,8 @@ export interface DemonstrationSource {
   title: string
   year: string
   publisher: string
+  /** Who put it on the page and when; whoever made the page, with the page, unless told. */
+  since?: { by: PersonKey; daysAgo: number }
   /** Where it is attached besides the page. */
   parameter?: { symbol: string; label: 'table' | 'page' | 'section' | 'equation'; locator: string; quoted?: string }
 }
@@ -178,6 +181,7 @@ export const pages: {
         title: 'Static pull on the worn pitch bearing',
         year: '2026',
         publisher: 'Gullfoil Bench',
+        since: { by: 'juno', daysAgo: 19 },
         parameter: { symbol: 'k3', label: 'section', locator: '4.2' },
       },
     ],
@@ -228,6 +232,7 @@ export const pages: {
         title: 'Calorimetry of the nitration step, second series',
         year: '2026',
         publisher: 'Tarn Street Process',
+        since: { by: 'anselm', daysAgo: 3 },
         parameter: { symbol: 'Bh', label: 'table', locator: '1' },
       },
     ],
@@ -387,3 +392,9 @@ export const pages: {
     ],
   },
 ]
+
+/** A model document of ./models, unparsed. */
+export function readDemonstrationModel(name: string): unknown {
+  const parsed: unknown = JSON.parse(readFileSync(new URL(`./models/${name}.json`, import.meta.url), 'utf8'))
+  return parsed
+}

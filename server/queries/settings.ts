@@ -7,3 +7,12 @@ export async function readSetting(db: Queryable, name: string): Promise<unknown>
   const [row] = await db.select({ value: settings.value }).from(settings).where(eq(settings.name, name)).limit(1)
   return row?.value ?? null
 }
+
+/** Writes a small fact, over an older one of that name. */
+export async function writeSetting(db: Queryable, name: string, value: object): Promise<void> {
+  await db.insert(settings).values({ name, value }).onDuplicateKeyUpdate({ set: { value } })
+}
+
+export async function removeSetting(db: Queryable, name: string): Promise<void> {
+  await db.delete(settings).where(eq(settings.name, name))
+}

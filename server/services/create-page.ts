@@ -23,6 +23,8 @@ export async function create(
   input: Actor & {
     groupId: number
     prefix: string
+    /** Of the code; the next free one unless given. A number that was ever given fails. */
+    number?: number
     title: string
     summary?: string
     field?: string
@@ -37,7 +39,7 @@ export async function create(
         errors: [{ code: 'unknown-prefix', message: 'Choose one of the group’s prefixes.', path: 'prefix' }],
       })
     }
-    const number = (await queries.lastNumber(tx, prefix)) + 1
+    const number = input.number ?? (await queries.lastNumber(tx, prefix)) + 1
     if (number > 999_999) throw new AppError('bad-request', `Every number of ${prefix} has been given.`)
     const code = `${prefix}-${String(number).padStart(2, '0')}`
     await queries.insertCode(tx, { code, prefix, number, givenAt: now })
