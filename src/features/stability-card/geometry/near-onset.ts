@@ -1,6 +1,5 @@
 import type { HopfPoint, StabilityCard } from '#shared/model/card-document.ts'
-import type { Piece } from './pieces.ts'
-import { statesAt } from './states-at.ts'
+import type { CurvePoint, Piece } from './pieces.ts'
 
 /**
  * How far from an onset its prediction is drawn: 15 % of the control range, or as far as the amplitude stays within 25 %
@@ -25,41 +24,61 @@ function predicted(at: HopfPoint, index: number, pieces: readonly Piece[], range
   const { amplitudeCoefficient: coefficient, cycleSide: side, operating, verdict } = at
   if (!operating || coefficient === null || side === null || coefficient <= 0) return null
   const sign = side === 'above' ? 1 : -1
-  const room = side === 'above' ? range.high - at.p : at.p - range.low
+  const own = pieces.filter((piece) => piece.branch === at.branch).flatMap((piece) => piece.points)
+  const run = runFrom(own, at, sign)
+  const end = run.at(-1)
+  if (!end) return null
   const farthest = Math.min(
     reachOfRange * (range.high - range.low),
     range.span > 0 ? ((reachOfSpan * range.span) / coefficient) ** 2 : Number.POSITIVE_INFINITY,
-    room,
+    // Where the branch turns back or leaves the box there is no steady state to swing about, so the line ends.
+    sign * (end.p - at.p),
   )
   if (!(farthest > 0)) return null
-  const own = pieces.filter((piece) => piece.branch === at.branch)
-  const points: NearOnset['points'] = []
-  let middle: number | null = null
-  for (let i = 0; i <= steps; i++) {
-    // Even steps of amplitude, not of the control: the curve leaves the onset upright and would show a corner there.
+  // Even steps of amplitude, not of the control: the curve leaves the onset upright and would show a corner there.
+  const points = Array.from({ length: steps + 1 }, (_, i) => {
     const share = i / steps
     const p = at.p + sign * farthest * share * share
-    const candidates = statesAt(own, p).map((state) => state.value)
-    const expected: number | null = middle ?? onset(at, own)
-    if (expected === null) break
-    const next: number | undefined = candidates.sort((a, b) => Math.abs(a - expected) - Math.abs(b - expected))[0]
-    // The branch turns back or leaves the box: there is no steady state to swing about, so the line ends.
-    if (next === undefined && i > 0) break
-    middle = next ?? expected
-    points.push({ p, middle, amplitude: coefficient * Math.sqrt(farthest) * share })
-  }
-  return points.length < 2 ? null : { hopf: index, stable: verdict === 'soft', side, points }
+    return { p, middle: valueOn(run, p), amplitude: coefficient * Math.sqrt(farthest) * share }
+  })
+  return { hopf: index, stable: verdict === 'soft', side, points }
 }
 
-/** The observed value at the onset, as the piece that ends there has it. */
-function onset(at: HopfPoint, own: readonly Piece[]): number | null {
-  const states = own
-    .flatMap((piece) => piece.points)
-    .sort((a, b) => Math.abs(a.p - at.p) - Math.abs(b.p - at.p))
+const gapTo = (at: HopfPoint, point: CurvePoint): number =>
+  Object.entries(at.state).reduce((sum, [symbol, value]) => sum + Math.abs(value - (point.state[symbol] ?? value)), 0)
+
+/** The branch from the onset on, in the direction in which the control moves to the cycle's side, as far as it keeps moving. */
+function runFrom(own: readonly CurvePoint[], at: HopfPoint, sign: 1 | -1): CurvePoint[] {
+  const start = own
+    .map((point, i) => ({ i, away: Math.abs(point.p - at.p), gap: gapTo(at, point) }))
+    .sort((a, b) => a.away - b.away || a.gap - b.gap)
     .slice(0, 8)
-  const gap = (state: Readonly<Record<string, number>>) =>
-    Object.entries(at.state).reduce((sum, [symbol, value]) => sum + Math.abs(value - (state[symbol] ?? value)), 0)
-  return states.sort((a, b) => gap(a.state) - gap(b.state))[0]?.value ?? null
+    .sort((a, b) => a.gap - b.gap || a.away - b.away)[0]?.i
+  if (start === undefined) return []
+  const follow = (step: 1 | -1) => {
+    const run: CurvePoint[] = []
+    for (let i = start; i >= 0 && i < own.length; i += step) {
+      const point = own[i]
+      const last = run.at(-1)
+      if (!point || (last && sign * (point.p - last.p) < 0)) break
+      if (!last || point.p !== last.p) run.push(point)
+    }
+    return run
+  }
+  const [up, down] = [follow(1), follow(-1)]
+  return up.length >= down.length ? up : down
+}
+
+/** The observed value of a run at control value `p`. */
+function valueOn(run: readonly CurvePoint[], p: number): number {
+  for (let i = 1; i < run.length; i++) {
+    const a = run[i - 1]
+    const b = run[i]
+    if (a && b && (a.p - p) * (b.p - p) <= 0) return a.value + ((b.value - a.value) * (p - a.p)) / (b.p - a.p)
+  }
+  // Outside by rounding, or before the first computed point.
+  const [first, last] = [run[0], run.at(-1)]
+  return (first && last && Math.abs(first.p - p) <= Math.abs(last.p - p) ? first : last)?.value ?? 0
 }
 
 interface Range {

@@ -94,13 +94,24 @@ function endFor(end: PieceEnd, card: StabilityCard, frame: Frame): GroundEnd {
   return { kind: 'hard', recovery: side?.returnAt === undefined ? null : frame.x.toPixel(side.returnAt) }
 }
 
-/** True for the piece the window stands on. */
-function carriesWindow(piece: Piece, card: StabilityCard): boolean {
+/** The piece the window stands on: of those on its branch that reach over its middle, the one of the same extent. */
+function windowPiece(pieces: readonly Piece[], card: StabilityCard): Piece | null {
   const window = card.window
-  if (!window || piece.branch !== window.branch || !piece.stable) return false
+  if (!window) return null
   const middle = (window.from + window.to) / 2
-  const ps = piece.points.map((point) => point.p)
-  return Math.min(...ps) <= middle && Math.max(...ps) >= middle
+  const fitting = pieces
+    .filter((piece) => piece.stable && piece.branch === window.branch)
+    .map((piece) => {
+      const low = piece.points.reduce((a, point) => Math.min(a, point.p), Number.POSITIVE_INFINITY)
+      const high = piece.points.reduce((a, point) => Math.max(a, point.p), Number.NEGATIVE_INFINITY)
+      return {
+        piece,
+        covers: low <= middle && middle <= high,
+        misfit: Math.abs(low - window.from) + Math.abs(high - window.to),
+      }
+    })
+    .filter(({ covers }) => covers)
+  return fitting.sort((a, b) => a.misfit - b.misfit)[0]?.piece ?? null
 }
 
 function placed(geometry: CardGeometry, frame: Frame, flat: boolean) {
@@ -141,10 +152,11 @@ export function sceneOf(
   const frame = frameFor(width, subject.control, extentOf(earlier ? [geometry, earlier] : [geometry], flat))
   const { at, curves, near } = placed(geometry, frame, flat)
   const solid = curves.filter((curve) => curve.stable)
+  const running = windowPiece(geometry.pieces, card)
   const grounds = geometry.pieces.flatMap((piece, i) => {
     const curve = curves[i]
     if (!piece.stable || !curve) return []
-    const main = carriesWindow(piece, card)
+    const main = piece === running
     const obstacles = solid.flatMap((other) => (other === curve ? [] : segmentsOf(other.points)))
     const ends = [endFor(piece.start, card, frame), endFor(piece.end, card, frame)] as const
     const shape = groundUnder(curve.points, main ? frame.depth : frame.otherDepth, ...ends, obstacles, frame.plot)
