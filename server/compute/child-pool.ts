@@ -29,7 +29,7 @@ export interface ChildPoolOptions {
   log?: (event: 'deadline' | 'crashed' | 'start-failed', detail: { pid: number | undefined; stderr: string }) => void
 }
 
-export type JobFailure = 'deadline' | 'crashed' | 'failed' | 'queue-full' | 'aborted' | 'closed'
+export type JobFailure = 'deadline' | 'crashed' | 'not-started' | 'failed' | 'queue-full' | 'aborted' | 'closed'
 /** `message` of a job that failed: what the child threw, a bug. */
 export type JobOutcome = { ok: true; answer: unknown } | { ok: false; reason: JobFailure; message?: string }
 
@@ -137,7 +137,7 @@ export function createChildPool(options: ChildPoolOptions): ChildPool {
     if (slot.running) finish(slot, { ok: false, reason: 'crashed' })
     if (slot.ready) return next()
     failedStarts += 1
-    if (failedStarts >= 3) for (const job of queue.splice(0)) job.settle({ ok: false, reason: 'crashed' })
+    if (failedStarts >= 3) for (const job of queue.splice(0)) job.settle({ ok: false, reason: 'not-started' })
     clearTimeout(restart)
     restart = setTimeout(next, Math.min(100 * 2 ** failedStarts, 10_000))
     restart.unref()

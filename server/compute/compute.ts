@@ -82,6 +82,7 @@ async function run(
     case 'aborted':
       return { ok: false, reason: 'aborted' }
     case 'queue-full':
+    case 'not-started':
     case 'closed':
       return { ok: false, reason: 'busy' }
     default:

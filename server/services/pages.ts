@@ -92,7 +92,8 @@ async function draftOf(db: Queryable, { id, row }: PageContext, digestInForce: s
     writers: await queries.listWriters(db, id, row.generation),
     changedAt: row.draftChangedAt.toISOString(),
     kind: row.draftSummary === null ? null : cardSummary.parse(row.draftSummary).kind,
-    differs: digestInForce === null || row.draftDigest !== digestInForce,
+    // What was typed after the last computation is taken for a difference until it is compared.
+    differs: digestInForce === null || row.draftDigest !== digestInForce || (row.draftCardAt ?? 0) < row.draftChangedAt,
   }
 }
 

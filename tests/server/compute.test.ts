@@ -139,7 +139,7 @@ describe('the pool of child processes', () => {
       script: new URL('./fixtures/no-such-child.ts', import.meta.url),
       log: (event) => events.push(event),
     })
-    expect(await pool.run({ act: 'echo' })).toEqual({ ok: false, reason: 'crashed' })
+    expect(await pool.run({ act: 'echo' })).toEqual({ ok: false, reason: 'not-started' })
     expect(new Set(events)).toEqual(new Set(['start-failed']))
   })
 })
