@@ -75,6 +75,7 @@ export function stopOnSignals(stop: (code: number, reason: string) => Promise<vo
   process.on('SIGINT', () => void stop(0, 'SIGINT'))
   // npm start holds a channel to this process; when it closes, npm start is gone.
   if (process.channel) process.on('disconnect', () => void stop(0, 'the starting process ended'))
+  else if (process.env.BRINKBOOK_SUPERVISED) void stop(0, 'the starting process ended')
   const fatal = (kind: string) => (error: unknown) => {
     logger.fatal({ err: error }, kind)
     void stop(1, kind)

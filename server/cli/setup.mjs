@@ -1,48 +1,8 @@
 // What start and test both need before anything else can run: packages and the built client. Plain Node, no package.
-import { spawn } from 'node:child_process'
 import { createHash } from 'node:crypto'
-import { existsSync, mkdirSync, readdirSync, readFileSync, statSync, writeFileSync } from 'node:fs'
+import { existsSync, mkdirSync, readdirSync, readFileSync, rmSync, statSync, writeFileSync } from 'node:fs'
 import path from 'node:path'
-
-export const cloneRoot = path.resolve(import.meta.dirname, '../..')
-const cache = path.join(cloneRoot, '.cache')
-
-/** Runs a program to its end. `quiet`: its output is kept and shown only if it fails. `toStderr`: nothing on standard output. */
-export function run(command, args, { quiet = false, toStderr = false, env = process.env } = {}) {
-  return new Promise((resolve, reject) => {
-    const stdio = quiet ? ['ignore', 'pipe', 'pipe'] : ['ignore', toStderr ? 2 : 'inherit', 'inherit']
-    const child = spawn(command, args, { cwd: cloneRoot, stdio, env })
-    let kept = ''
-    child.stdout?.on('data', (chunk) => {
-      kept += chunk
-    })
-    child.stderr?.on('data', (chunk) => {
-      kept += chunk
-    })
-    child.once('error', reject)
-    child.once('exit', (code, signal) =>
-      code === 0
-        ? resolve(kept)
-        : reject(new Error(`${command} ${args.join(' ')} ended with ${code ?? signal}\n${kept}`)),
-    )
-  })
-}
-
-const digestOf = (...parts) => {
-  const hash = createHash('sha256')
-  for (const part of parts) hash.update(part)
-  return hash.digest('hex')
-}
-
-function storedDigest(name) {
-  const file = path.join(cache, name)
-  return existsSync(file) ? readFileSync(file, 'utf8') : null
-}
-
-function storeDigest(name, digest) {
-  mkdirSync(cache, { recursive: true })
-  writeFileSync(path.join(cache, name), digest)
-}
+import { cloneRoot, run } from './programs.mjs'
 
 export function checkNode() {
   const [major = 0, minor = 0] = process.versions.node.split('.').map(Number)
@@ -51,15 +11,34 @@ export function checkNode() {
   }
 }
 
-/** Installs the packages where they are missing or package-lock.json has changed since. */
-export async function ensurePackages(say, options = {}) {
-  const lock = digestOf(readFileSync(path.join(cloneRoot, 'package-lock.json')))
-  const installed = path.join(cloneRoot, 'node_modules/.package-lock.json')
-  if (existsSync(installed) && storedDigest('packages') === lock) return
+const readJson = (file) => JSON.parse(readFileSync(path.join(cloneRoot, file), 'utf8'))
+
+/**
+ * True where node_modules holds exactly what package-lock.json asks for. npm writes its own list last, so an installation
+ * that was cut off has none. Packages for other machines are optional and may be missing.
+ */
+function packagesAreThere() {
+  if (!existsSync(path.join(cloneRoot, 'node_modules/.package-lock.json'))) return false
+  const wanted = readJson('package-lock.json').packages
+  const there = readJson('node_modules/.package-lock.json').packages
+  return (
+    Object.keys(there).every((name) => name in wanted) &&
+    Object.entries(wanted).every(([name, { version, integrity, optional }]) => {
+      if (name === '' || (!(name in there) && optional)) return true
+      return there[name]?.version === version && there[name].integrity === integrity
+    })
+  )
+}
+
+/** Installs the packages where they are missing or others than package-lock.json asks for. */
+export async function ensurePackages(say) {
+  if (packagesAreThere()) return
   say('Installing the packages (npm ci)')
   // NODE_ENV=production would leave out what the build needs.
-  await run('npm', ['ci', '--include=dev', '--no-audit', '--no-fund'], { quiet: true, ...options })
-  storeDigest('packages', lock)
+  await run('npm', ['ci', '--include=dev', '--no-audit', '--no-fund'], {
+    quiet: true,
+    beat: (seconds) => say(`  still installing the packages (${seconds} s)`),
+  })
 }
 
 function filesBelow(folder) {
@@ -69,17 +48,34 @@ function filesBelow(folder) {
     .sort()
 }
 
+function digestOfClient() {
+  const names = [
+    ...['src', 'shared', 'public'].flatMap((folder) => filesBelow(path.join(cloneRoot, folder))),
+    ...['index.html', 'vite.config.ts', 'package.json', 'package-lock.json'].map((name) => path.join(cloneRoot, name)),
+  ]
+  const hash = createHash('sha256')
+  for (const name of names) {
+    const content = readFileSync(name)
+    hash.update(`${path.relative(cloneRoot, name)}\0${content.length}\0`).update(content)
+  }
+  return hash.digest('hex')
+}
+
 /** Builds the client unless its sources are those of the last build. */
 export async function ensureClient(say) {
-  const sources = [
-    ...['src', 'shared'].flatMap((folder) => filesBelow(path.join(cloneRoot, folder))),
-    ...['index.html', 'vite.config.ts', 'package-lock.json'].map((name) => path.join(cloneRoot, name)),
-  ]
-  const digest = digestOf(...sources.flatMap((file) => [path.relative(cloneRoot, file), readFileSync(file)]))
-  if (existsSync(path.join(cloneRoot, 'dist/index.html')) && storedDigest('client') === digest) return
+  const cache = path.join(cloneRoot, '.cache')
+  const digestFile = path.join(cache, 'client')
+  const digest = digestOfClient()
+  const built = existsSync(path.join(cloneRoot, 'dist/index.html')) && existsSync(digestFile)
+  if (built && readFileSync(digestFile, 'utf8') === digest) return
   say('Building the client')
-  await run(process.execPath, [path.join(cloneRoot, 'node_modules/vite/bin/vite.js'), 'build', '--logLevel', 'warn'], {
+  rmSync(digestFile, { force: true })
+  const vite = path.join(cloneRoot, 'node_modules/vite/bin/vite.js')
+  await run(process.execPath, [vite, 'build', '--logLevel', 'warn'], {
     quiet: true,
+    beat: (seconds) => say(`  still building the client (${seconds} s)`),
+    env: { ...process.env, NODE_ENV: 'production' },
   })
-  storeDigest('client', digest)
+  mkdirSync(cache, { recursive: true })
+  writeFileSync(digestFile, digest)
 }

@@ -103,6 +103,8 @@ async function describe(db: Database, code: string): Promise<string> {
   const main = summary?.main === null ? undefined : summary?.onsets[summary?.main ?? 0]
   if (!summary) throw new Error(`The card of ${code} could not be computed.`)
   const { symbol, unit } = summary.control
-  const where = main ? `${summary.kind} onset at ${symbol} = ${Number(main.p.toPrecision(4))} ${unit}` : 'no onset'
+  const where = main
+    ? `${summary.kind} onset at ${symbol} = ${[Number(main.p.toPrecision(4)), ...(unit === '1' ? [] : [unit])].join(' ')}`
+    : 'no onset'
   return `${code} ${page.title}: ${where}`
 }

@@ -13,6 +13,13 @@ const shared = globalThis as typeof globalThis & {
   brinkbookDatabase?: { users: number; server: Promise<RunningMariadb> }
 }
 
+// npm test holds a channel to the run; when it closes, npm test was killed and nobody waits for the result any more.
+// The database's own watcher then stops the database.
+if (process.channel) {
+  process.once('disconnect', () => process.exit(1))
+  process.channel.unref()
+}
+
 export default async function setup(project: TestProject) {
   shared.brinkbookDatabase ??= { users: 0, server: startThrowawayMariadb() }
   const running = shared.brinkbookDatabase
