@@ -37,7 +37,7 @@ function readParts(text: string): CardPart[] {
 
 /** npm runs scripts in the project's folder; a relative file is meant from where the user stands. */
 function readInput(file: string): string {
-  const place = file === '-' ? 0 : path.resolve(process.env['INIT_CWD'] ?? process.cwd(), file)
+  const place = file === '-' ? 0 : path.resolve(process.env.INIT_CWD ?? process.cwd(), file)
   try {
     return readFileSync(place, 'utf8')
   } catch (error) {
