@@ -5,7 +5,10 @@ import type { Config } from '#server/config.ts'
 
 /** The content security policy; the nonce is for the editor's own style sheet. */
 export function contentSecurityPolicy(config: Config, nonce?: string): string {
-  const sockets = config.origins.map((origin) => origin.replace(/^http/, 'ws'))
+  // A policy cannot name an IPv6 address; a browser that ignores the entry says so in its console.
+  const sockets = config.origins
+    .filter((origin) => !origin.includes('['))
+    .map((origin) => origin.replace(/^http/, 'ws'))
   return [
     "default-src 'none'",
     "script-src 'self'",

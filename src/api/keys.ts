@@ -4,6 +4,7 @@
  */
 export const keys = {
   session: ['session'] as const,
+  links: ['links'] as const,
   library: (viewer: number) => ['viewer', viewer, 'library'] as const,
   groups: (viewer: number) => ['viewer', viewer, 'groups'] as const,
   group: (viewer: number, group: string) => ['viewer', viewer, 'groups', group] as const,

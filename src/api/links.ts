@@ -8,26 +8,30 @@ import {
   readSetup,
 } from '#shared/api/session.ts'
 import { call } from './client.ts'
+import { keys } from './keys.ts'
 import { useBeginSession } from './session.ts'
 
 // One-time links: what they are for, and the act that uses them up. Each act signs the person in.
 
 export const setupQuery = (token: string) =>
   queryOptions({
-    queryKey: ['links', 'setup', token],
+    queryKey: [...keys.links, 'setup', token],
     queryFn: ({ signal }) => call(readSetup, { params: { token }, signal }),
+    staleTime: Number.POSITIVE_INFINITY,
   })
 
 export const invitationQuery = (token: string) =>
   queryOptions({
-    queryKey: ['links', 'invitation', token],
+    queryKey: [...keys.links, 'invitation', token],
     queryFn: ({ signal }) => call(readInvitation, { params: { token }, signal }),
+    staleTime: Number.POSITIVE_INFINITY,
   })
 
 export const passwordLinkQuery = (token: string) =>
   queryOptions({
-    queryKey: ['links', 'password', token],
+    queryKey: [...keys.links, 'password', token],
     queryFn: ({ signal }) => call(readPasswordLink, { params: { token }, signal }),
+    staleTime: Number.POSITIVE_INFINITY,
   })
 
 export function useFinishSetup(token: string) {

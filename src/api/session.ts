@@ -33,7 +33,8 @@ export function useViewer(): number {
 export function useBeginSession() {
   const queryClient = useQueryClient()
   return (session: SessionState) => {
-    queryClient.clear()
+    // What a one-time link was for stays: its screen still stands, and would ask for the used link again.
+    queryClient.removeQueries({ predicate: (query) => query.queryKey[0] !== keys.links[0] })
     queryClient.setQueryData(keys.session, session)
   }
 }

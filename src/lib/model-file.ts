@@ -1,7 +1,7 @@
 import { z } from 'zod'
 
-/** Larger than any model document may be; a file above it is not even read. */
-export const largestFile = 1024 * 1024
+/** The library takes requests of 256 KiB; a larger document is refused before it is sent. */
+export const largestFile = 250 * 1024
 
 const titled = z.object({ title: z.string().trim().min(1).max(120) })
 
@@ -10,7 +10,7 @@ export type ReadFile = { ok: true; document: unknown; title: string | null } | {
 /** Text of a file or of the clipboard as a model document. Whether it makes a model is the server's to say; this only reads JSON. */
 export function readModelText(text: string): ReadFile {
   if (text.trim() === '') return { ok: false, message: 'Choose a file or paste a model document.' }
-  if (text.length > largestFile) return { ok: false, message: 'Larger than 1 MiB. No model document is.' }
+  if (text.length > largestFile) return { ok: false, message: 'Larger than 250 KiB, which is more than the library takes.' }
   let document: unknown
   try {
     document = JSON.parse(text)

@@ -142,7 +142,7 @@ describe('a model document from a file or the clipboard', () => {
     expect(readModelText(' ')).toMatchObject({ ok: false })
     expect(readModelText(`"${'x'.repeat(largestFile)}"`)).toMatchObject({
       ok: false,
-      message: expect.stringContaining('1 MiB'),
+      message: expect.stringContaining('250 KiB'),
     })
   })
 })

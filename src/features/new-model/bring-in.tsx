@@ -24,7 +24,7 @@ export function BringIn(props: WayProps & { onStart: (body: { title: string; doc
   }
   const takeFile = async (file: File | undefined) => {
     if (!file) return
-    if (file.size > largestFile) setFault('Larger than 1 MiB. No model document is.')
+    if (file.size > largestFile) setFault('Larger than 250 KiB, which is more than the library takes.')
     else take(await file.text(), file.name)
   }
   const drop = (event: DragEvent) => {
