@@ -54,7 +54,7 @@ export async function createTestApp(options: TestAppOptions = {}) {
     ? createLogger({ logLevel: 'info' }, { write: (line: string) => void log.push(line) })
     : pino({ level: 'silent' })
   const widened: Limits = { ...limits, rate: { ...limits.rate, api: 1_000_000 } }
-  const app = createApp({
+  const dependencies = {
     db: database.db,
     config,
     limits: options.limits?.(widened) ?? widened,
@@ -62,9 +62,11 @@ export async function createTestApp(options: TestAppOptions = {}) {
     compute: options.compute ?? noCompute,
     logger,
     now: () => new Date(Date.now() + clock.ahead),
-    client: options.client,
-  })
+  }
+  const app = createApp({ ...dependencies, client: options.client })
   return {
+    dependencies,
+    built: app,
     app: app.express,
     api: app.api,
     gate: app.gate,
