@@ -1,7 +1,10 @@
+import { once } from 'node:events'
 import { mkdirSync, mkdtempSync, rmSync, writeFileSync } from 'node:fs'
+import { connect } from 'node:net'
 import os from 'node:os'
 import path from 'node:path'
 import { afterAll, beforeAll, describe, expect, test } from 'vitest'
+import { z } from 'zod'
 import { createTestApp, type TestApp } from '#tests/support/app.ts'
 import { expectProblem, tab } from '#tests/support/http.ts'
 
@@ -21,6 +24,19 @@ afterAll(async () => {
   await t.close()
   rmSync(directory, { recursive: true })
 })
+
+/** The head of an answer to exactly this target, which no client has tidied up. */
+async function rawGet(target: string): Promise<string> {
+  const server = t.app.listen(0, '127.0.0.1')
+  await once(server, 'listening')
+  const { port } = z.object({ port: z.number() }).parse(server.address())
+  const socket = connect(port, '127.0.0.1')
+  socket.write(`GET ${target} HTTP/1.1\r\nHost: 127.0.0.1\r\nConnection: close\r\n\r\n`)
+  let text = ''
+  for await (const chunk of socket) text += String(chunk)
+  server.close()
+  return text.split('\r\n\r\n')[0] ?? ''
+}
 
 const nonceIn = (policy: unknown) => /style-src 'self' 'nonce-([A-Za-z0-9+/]{22}==)';/.exec(String(policy))?.[1]
 
@@ -75,6 +91,36 @@ describe('assets', () => {
     '/package.json',
   ])('%s is nothing', async (address) => {
     expectProblem(await tab(t.app).get(address), 'not-found')
+  })
+})
+
+describe('redirects', () => {
+  // There are none: whatever an address holds, nobody is ever sent elsewhere by the server.
+  test.each([
+    '//evil.example',
+    '//evil.example/%2e%2e',
+    '///evil.example',
+    '/\\evil.example',
+    '/%5cevil.example',
+    '/%2f%2fevil.example/',
+    '/assets',
+    '/assets//evil.example',
+    '/assets/..//evil.example',
+    '/m/RD-017/',
+    '/sign-in?next=//evil.example',
+    '/sign-in?next=https://evil.example',
+    '/sign-in?next=%2f%2fevil.example',
+    '/sign-in?next=javascript:alert(1)',
+    '/sign-in?next=/%5Cevil.example',
+    '/http://evil.example',
+    '/https:evil.example',
+    '/%0d%0aLocation:%20https://evil.example',
+    '/.%2e//evil.example',
+    '/api/v1//evil.example',
+  ])('%s', async (address) => {
+    const answer = await rawGet(address)
+    expect(answer).toMatch(/^HTTP\/1\.1 (200|400|404) /)
+    expect(answer).not.toMatch(/^location:/im)
   })
 })
 
