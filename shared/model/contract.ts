@@ -37,6 +37,10 @@ export function createContractor(tape: Tape, builder: TapeBuilder): Contractor {
     for (const j of states) users[j]?.push(i)
   })
   const before = new Float64Array(n)
+  const shared = sharedRegisters(tape, cones)
+  // Last call in which a shared register was written: its cut from one equation holds for the others too.
+  const written = new Int32Array(tape.registers)
+  let call = 0
   const queue = new Int32Array(n + 1)
   const queued = new Uint8Array(n)
   const effort = { operations: 0 }
@@ -64,8 +68,17 @@ export function createContractor(tape: Tape, builder: TapeBuilder): Contractor {
     effort.operations += 2 * list.length
     for (const k of list) {
       const n = b[k] as number
-      if (stepInterval(code[k] as number, lo, hi, first + k, a[k] as number, n, c[k] as number, n) === none)
-        return false
+      const r = first + k
+      const low = lo[r] as number
+      const high = hi[r] as number
+      if (stepInterval(code[k] as number, lo, hi, r, a[k] as number, n, c[k] as number, n) === none) return false
+      if (shared[r] === 0) continue
+      if (written[r] === call) {
+        if ((lo[r] as number) < low) lo[r] = low
+        if ((hi[r] as number) > high) hi[r] = high
+        if ((lo[r] as number) > (hi[r] as number)) return false
+      }
+      written[r] = call
     }
     const output = tape.outputs[i] as number
     if ((lo[output] as number) > 0 || (hi[output] as number) < 0) return false
@@ -89,6 +102,7 @@ export function createContractor(tape: Tape, builder: TapeBuilder): Contractor {
         lo[j] = xlo[j] as number
         hi[j] = xhi[j] as number
       }
+      call++
       let head = 0
       let count = cones.length
       for (let i = 0; i < cones.length; i++) {
@@ -122,6 +136,13 @@ export function createContractor(tape: Tape, builder: TapeBuilder): Contractor {
       return true
     },
   }
+}
+
+/** 1 for registers of instructions that more than one equation uses. */
+function sharedRegisters(tape: Tape, cones: Cone[]): Uint8Array {
+  const uses = new Int32Array(tape.registers)
+  for (const { list } of cones) for (const k of list) uses[tape.first + k] = (uses[tape.first + k] as number) + 1
+  return Uint8Array.from(uses, (count) => (count > 1 ? 1 : 0))
 }
 
 /** The instructions that an output needs, in order, and the states it depends on. */

@@ -142,6 +142,7 @@ function operandsOf(builder: TapeBuilder, id: number): number[] {
     case op.powlog:
     case op.min:
     case op.max:
+    case op.share:
       return [a, b]
     case op.select:
       return [a, b, builder.c[id] as number]
@@ -177,6 +178,13 @@ function partialDerivative(builder: TapeBuilder, id: number, operand: number): n
         () => builder.div(one, b),
         () => builder.neg(builder.div(id, b)),
       )
+    case op.share: {
+      const whole = builder.add(a, b)
+      return sum(
+        () => builder.div(builder.share(b, a), whole),
+        () => builder.neg(builder.div(id, whole)),
+      )
+    }
     case op.neg:
       return builder.constant(-1)
     case op.powi:

@@ -197,6 +197,17 @@ export function projectBack(
         return false
       if ((hi[y] as number) < low) return cut(lo, hi, x, low, high)
       return (hi[x] as number) >= low || cut(lo, hi, y, low, high)
+    case 32: {
+      // share: a = b r/(1 - r), b = a (1 - r)/r
+      load(lo, hi, r, x, y)
+      put(4, 1, 1)
+      subInterval(slo, shi, 5, 4, 1)
+      mulInterval(slo, shi, 2, 3, 1)
+      if (!cutQuotient(lo, hi, x, 2, 5)) return false
+      put(2, lo[x] as number, hi[x] as number)
+      mulInterval(slo, shi, 3, 2, 5)
+      return cutQuotient(lo, hi, y, 3, 1)
+    }
     default:
       return true
   }

@@ -20,6 +20,7 @@ import {
   oddPowerInterval,
   partial,
   selectInterval,
+  shareInterval,
   signInterval,
   subInterval,
 } from '#shared/numerics/interval.ts'
@@ -237,6 +238,8 @@ export function stepInterval(
       return full
     case 31: // jump
       return jumpInterval(lo, hi, r, x)
+    case 32: // share
+      return shareInterval(lo, hi, r, x, y)
     default:
       lo[r] = Number.NEGATIVE_INFINITY
       hi[r] = Number.POSITIVE_INFINITY

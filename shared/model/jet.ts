@@ -220,6 +220,14 @@ function step(
     case 30: // select
       branch(t, r, y, z, x0, order)
       return
+    case 32: // share
+      for (let k = 0; k <= order; k++) companion[k] = (t[x + k] as number) + (t[y + k] as number)
+      for (let k = 1; k <= order; k++) {
+        let sum = t[x + k] as number
+        for (let j = 1; j <= k; j++) sum -= (companion[j] as number) * (t[r + k - j] as number)
+        t[r + k] = sum / (companion[0] as number)
+      }
+      return
     default:
       for (let k = 1; k <= order; k++) t[r + k] = Number.NaN
   }

@@ -2,7 +2,7 @@
 
 import type { Expression, FunctionName } from './expression.ts'
 import { op } from './op-codes.ts'
-import { holdsExponential, smoothQuotient } from './removable-quotients.ts'
+import { holdsExponential, holdsPattern, smoothQuotient } from './removable-quotients.ts'
 import type { TapeBuilder } from './tape-builder.ts'
 
 const unaryCodes: Partial<Record<FunctionName, number>> = {
@@ -110,7 +110,7 @@ function multiply(builder: TapeBuilder, a: number, b: number): number {
 }
 
 function divide(builder: TapeBuilder, a: number, b: number): number {
-  if (holdsExponential(builder, a) || holdsExponential(builder, b)) {
+  if (holdsPattern(builder, a, b)) {
     const smooth = smoothQuotient(builder, a, b, null)
     if (smooth !== null) return smooth
   }

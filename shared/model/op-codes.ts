@@ -45,6 +45,8 @@ export const op = {
   select: 30,
   /** Derivative of sign: 0, without bound in an interval that holds 0. */
   jump: 31,
+  /** a/(a + b): saturation terms such as x^n/(K^n + x^n). As a unit its bounds over a box are sharp. */
+  share: 32,
 } as const
 
 /** A constant or an input is a node of the builder, never an instruction. */
@@ -52,8 +54,16 @@ export const constantCode = 254
 export const inputCode = 255
 
 /** Number of register operands by code; `powi`, `exprel` and `bernoulli` have a plain number as second operand. */
-export const arity = Uint8Array.from({ length: 32 }, (_, code) => {
+export const arity = Uint8Array.from({ length: 33 }, (_, code) => {
   if (code === op.select) return 3
-  if (code <= op.div || code === op.pow || code === op.powlog || code === op.min || code === op.max) return 2
+  if (
+    code <= op.div ||
+    code === op.pow ||
+    code === op.powlog ||
+    code === op.min ||
+    code === op.max ||
+    code === op.share
+  )
+    return 2
   return 1
 })

@@ -133,7 +133,13 @@ function normalFactor(builder: TapeBuilder, node: number): { key: string; scale:
   return { key: `${key} ${(form.constant / scale).toPrecision(14)}`, scale }
 }
 
-/** Cheap test before the normal forms are made: does the product hold a sum with an exponential? */
+/** Cheap test before the normal forms are made: is the divisor a sum, or does the quotient hold an exponential? */
+export function holdsPattern(builder: TapeBuilder, a: number, b: number): boolean {
+  if (builder.isConstant(b)) return false
+  return builder.code[b] === op.add || holdsExponential(builder, a) || holdsExponential(builder, b)
+}
+
+/** Does the product hold a sum with an exponential? */
 export function holdsExponential(builder: TapeBuilder, node: number, depth = 0): boolean {
   const code = builder.code[node] as number
   if (code === inputCode || builder.isConstant(node) || depth > 12) return false
@@ -185,7 +191,11 @@ export function smoothQuotient(
   for (const [key, factor] of [...all.factors]) {
     if (factor.power === 0) continue
     const form = exponentialForm(builder, factor.node)
-    if (form === null) continue
+    if (form === null) {
+      const share = factor.power === -1 ? takeShare(builder, all, key, factor) : null
+      if (share !== null) primitives.push({ node: share, power: 1 })
+      continue
+    }
     const count = Math.abs(factor.power)
     if (form.shift === 1) {
       if (factor.power > 0) continue
@@ -233,6 +243,43 @@ function cancels(builder: TapeBuilder, all: Monomial, zero: Monomial, sign: numb
     needed.length > 0 &&
     needed.every(([key, factor]) => (all.factors.get(key)?.power ?? 0) * sign >= factor.power * count)
   )
+}
+
+/**
+ * Saturation terms: P/(P + Q) with P a factor of the product becomes share(P, Q). Returns that node and takes the sum
+ * and P out of the product, or null. P is a term of the sum that depends on a state.
+ */
+function takeShare(
+  builder: TapeBuilder,
+  all: Monomial,
+  key: string,
+  factor: { node: number; scale: number },
+): number | null {
+  const leaves: number[] = []
+  const stack = [factor.node]
+  for (let node = stack.pop(); node !== undefined; node = stack.pop()) {
+    if (builder.code[node] === op.add && !builder.isConstant(node))
+      stack.push(builder.a[node] as number, builder.b[node] as number)
+    else leaves.push(node)
+    if (leaves.length > 8) return null
+  }
+  if (leaves.length < 2) return null
+  for (const leaf of leaves) {
+    if (builder.varies[leaf] === 0) continue
+    const part: Monomial = { coefficient: 1, factors: new Map() }
+    if (!monomial(builder, leaf, 1, part) || part.factors.has(key)) continue
+    // A parameter in P that is no factor of the product would divide, and may be zero.
+    const fits = [...part.factors].every(([name, { node, power }]) =>
+      power > 0 ? (all.factors.get(name)?.power ?? 0) >= power : builder.varies[node] === 0,
+    )
+    if (!fits) continue
+    const rest = leaves.filter((other) => other !== leaf).reduce((sum, other) => builder.add(sum, other))
+    take(all, part, 1)
+    all.coefficient *= factor.scale
+    all.factors.delete(key)
+    return builder.share(leaf, rest)
+  }
+  return null
 }
 
 /** Divides the product by the exponent to the power `times`. */

@@ -156,6 +156,9 @@ export function runFrom(tape: Tape, r: Float64Array, start: number): void {
       case 31: // jump
         value = Number.isNaN(x) ? x : 0
         break
+      case 32: // share
+        value = x / (x + (r[b[i] as number] as number))
+        break
       default:
         value = Number.NaN
     }

@@ -265,6 +265,11 @@ export class TapeBuilder {
     return a < b ? this.#node(op.max, a, b) : this.#node(op.max, b, a)
   }
 
+  share(a: number, b: number): number {
+    if (this.isConstant(a) && this.isConstant(b)) return this.div(a, this.add(a, b))
+    return this.#node(op.share, a, b)
+  }
+
   select(test: number, positive: number, negative: number): number {
     return positive === negative ? positive : this.#node(op.select, test, positive, negative)
   }

@@ -243,3 +243,66 @@ export function jumpInterval(lo: Float64Array, hi: Float64Array, r: number, x: n
   entire(lo, hi, r)
   return partial
 }
+
+/**
+ * a/(a + b). Where a + b keeps one sign the quotient is monotone in a with the sign of b, and in b with that of -a: the
+ * bounds are taken at corners. Else as the plain quotient.
+ */
+export function shareInterval(lo: Float64Array, hi: Float64Array, r: number, x: number, y: number): Coverage {
+  const a = lo[x] as number
+  const b = hi[x] as number
+  const c = lo[y] as number
+  const d = hi[y] as number
+  const low = sumBelow(a, c)
+  const high = sumAbove(b, d)
+  const oneSign = low > 0 || high < 0
+  if (oneSign && (c >= 0 || d <= 0)) {
+    const rising = c >= 0
+    const bottom = rising ? a : b
+    const top = rising ? b : a
+    // At a fixed a the quotient falls with b where a > 0.
+    const least = shareBelow(bottom, bottom > 0 ? d : c)
+    hi[r] = shareAbove(top, top > 0 ? c : d)
+    lo[r] = least
+    return full
+  }
+  if (oneSign && (a >= 0 || b <= 0)) {
+    // Sign of b open, sign of a known: monotone in b, and the share of b is one minus it.
+    const falls = a >= 0
+    const bottom = falls ? d : c
+    const top = falls ? c : d
+    const least = shareBelow(bottom > 0 ? a : b, bottom)
+    hi[r] = shareAbove(top > 0 ? b : a, top)
+    lo[r] = least
+    return full
+  }
+  quotient.lo[0] = a
+  quotient.hi[0] = b
+  quotient.lo[1] = low
+  quotient.hi[1] = high
+  const coverage = divInterval(quotient.lo, quotient.hi, 2, 0, 1)
+  lo[r] = quotient.lo[2] as number
+  hi[r] = quotient.hi[2] as number
+  return coverage
+}
+
+const quotient = { lo: new Float64Array(3), hi: new Float64Array(3) }
+
+/** Lower bound of a/(a + b) for numbers; infinite ones stand for their limits. */
+function shareBelow(a: number, b: number): number {
+  if (a === 0) return 0
+  if (!Number.isFinite(a))
+    return Number.isFinite(b) ? below(1) : Math.sign(a) === Math.sign(b) ? 0 : Number.NEGATIVE_INFINITY
+  if (!Number.isFinite(b)) return -1e-300
+  const v = a / (a + b)
+  return v - (Math.abs(v) * 2 ** -51 + eta)
+}
+
+function shareAbove(a: number, b: number): number {
+  if (a === 0) return 0
+  if (!Number.isFinite(a))
+    return Number.isFinite(b) ? above(1) : Math.sign(a) === Math.sign(b) ? 1 : Number.POSITIVE_INFINITY
+  if (!Number.isFinite(b)) return 1e-300
+  const v = a / (a + b)
+  return v + (Math.abs(v) * 2 ** -51 + eta)
+}

@@ -1,53 +1,8 @@
 /** Newton's method for steady states: damped from afar, then on to the last digit. */
 
-import type { CompiledModel } from '#shared/model/compiled-model.ts'
-import { createLu, factorLu, type Lu, solveLu } from '#shared/numerics/linear-solve.ts'
-
-/** Workspace for one model; `width` is the box width of each state, the unit steps are measured in. */
-export interface NewtonSpace {
-  readonly model: CompiledModel
-  readonly n: number
-  readonly width: Float64Array
-  readonly f: Float64Array
-  readonly j: Float64Array
-  readonly step: Float64Array
-  readonly trial: Float64Array
-  readonly fTrial: Float64Array
-  readonly rowScale: Float64Array
-  readonly lu: Lu
-  /** Evaluations of F or of F and J. */
-  evaluations: number
-}
-
-export function createNewtonSpace(model: CompiledModel): NewtonSpace {
-  const { n } = model
-  const vector = (): Float64Array => new Float64Array(n)
-  return {
-    model,
-    n,
-    width: Float64Array.from(model.system.states, (state) => state.high - state.low),
-    f: vector(),
-    j: new Float64Array(n * n),
-    step: vector(),
-    trial: vector(),
-    fTrial: vector(),
-    rowScale: vector(),
-    lu: createLu(n),
-    evaluations: 0,
-  }
-}
-
-export function allFinite(values: Float64Array): boolean {
-  for (const value of values) if (!Number.isFinite(value)) return false
-  return true
-}
-
-/** Largest absolute entry. */
-export function largest(values: Float64Array): number {
-  let result = 0
-  for (const value of values) result = Math.max(result, Math.abs(value))
-  return result
-}
+import { factorLu, solveLu } from '#shared/numerics/linear-solve.ts'
+import { allFinite, largest, type NewtonSpace, setRowScale } from './newton-space.ts'
+import { pseudoStep } from './steady-singular.ts'
 
 /** F at x in units of what each right-hand side changes over the box (row sums of |J| width); NaN where not finite. */
 function scaledNorm(space: NewtonSpace, f: Float64Array): number {
@@ -57,16 +12,6 @@ function scaledNorm(space: NewtonSpace, f: Float64Array): number {
     if (!(value <= result)) result = value
   }
   return result
-}
-
-/** Writes row sums of |J| width at the last evaluated point. */
-export function setRowScale(space: NewtonSpace): void {
-  const { n, j, width, rowScale } = space
-  for (let i = 0; i < n; i++) {
-    let sum = 0
-    for (let k = 0; k < n; k++) sum += Math.abs(j[i * n + k] as number) * (width[k] as number)
-    rowScale[i] = sum > 0 && Number.isFinite(sum) ? sum : 1
-  }
 }
 
 /** Points that have been found, with their repulsion: m(x) = product of (1/d² + 1), d in box widths. */
@@ -113,13 +58,16 @@ export function approach(
     if (!allFinite(f) || !allFinite(j)) return false
     setRowScale(space)
     if (!factorLu(lu, j)) {
-      // An exactly singular Jacobian: at a zero we are there, elsewhere move on by a small fixed amount.
+      // An exactly singular Jacobian: at a zero we are there, elsewhere the shortest step that F asks for.
       if (scaledNorm(space, f) < 1e-13) return true
-      for (let k = 0; k < n; k++) x[k] = (x[k] as number) + 1e-3 * (width[k] as number) * Math.cos(k + round)
-      continue
+      const shortest = pseudoStep(space, p, x)
+      if (shortest === null) return false
+      step.set(shortest)
+      if (stepSize(space) === 0) return false
+    } else {
+      for (let k = 0; k < n; k++) step[k] = -(f[k] as number)
+      solveLu(lu, step)
     }
-    for (let k = 0; k < n; k++) step[k] = -(f[k] as number)
-    solveLu(lu, step)
     if (!allFinite(step)) return false
     const size = stepSize(space)
     const factor = deflation === null || deflation.points.length === 0 ? 1 : deflationFactor(space, x, deflation)
@@ -202,7 +150,7 @@ export function polish(space: NewtonSpace, p: Float64Array, x: Float64Array): Po
 }
 
 /** Sets coordinates within 1e-11 of a width of 0 to 0, each only if F is not larger for it. */
-function snapToZero(space: NewtonSpace, p: Float64Array, x: Float64Array): void {
+export function snapToZero(space: NewtonSpace, p: Float64Array, x: Float64Array): void {
   const { model, n, width, f, fTrial, trial } = space
   trial.set(x)
   let any = false

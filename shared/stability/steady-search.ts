@@ -17,7 +17,8 @@ import {
   proveNear,
   sweep,
 } from '#shared/numerics/krawczyk.ts'
-import { approach, type NewtonSpace, polish } from './steady-newton.ts'
+import type { NewtonSpace } from './newton-space.ts'
+import { approach, polish } from './steady-newton.ts'
 
 /** What a compiled tape offers beyond a closed form: contraction, and where it is defined. */
 export interface SearchHelp {
@@ -56,12 +57,8 @@ export interface SearchSpace {
 export function createSearchSpace(model: SearchableModel, newton: NewtonSpace): SearchSpace {
   const parameters = { current: new Float64Array(model.m) }
   const { n } = model
-  const [flo, fhi, jlo, jhi] = [n, n, n * n, n * n].map((size) => new Float64Array(size)) as [
-    Float64Array,
-    Float64Array,
-    Float64Array,
-    Float64Array,
-  ]
+  const [flo, fhi] = [new Float64Array(n), new Float64Array(n)]
+  const [jlo, jhi] = [new Float64Array(n * n), new Float64Array(n * n)]
   const system: IntervalSystem = {
     n,
     value(xlo, xhi, outLo, outHi) {
@@ -86,16 +83,14 @@ export function createSearchSpace(model: SearchableModel, newton: NewtonSpace): 
 /** A box is no longer cut below this, relative to the box of states and to the size of the coordinates. */
 const smallestShare = 1e-12
 const smallestRelative = 1e-8
-/** Undecided boxes within this share of the whole box of each other are one place. */
-const samePlace = 1e-6
 const mostUndecided = 200
 /** Off the middle, so that a zero in the middle of a symmetric box does not end up on the corner of all its parts. */
 const cutAt = 0.4871
 
 /**
  * Searches the box [low, high] at the parameters `p`. `effort` bounds the interval operations, `shouldStop` is asked
- * now and then, `known` are zeros found before (they need not be proved). `stopAt` is asked for each undecided place;
- * true ends the search (a continuum would spend the whole budget).
+ * now and then. `judge` is shown each place that cannot be decided and answers how far around it, as a share of its own
+ * size, boxes are not looked into any more; null ends the search (a continuum would spend the whole budget).
  */
 export function searchBox(
   space: SearchSpace,
@@ -104,7 +99,7 @@ export function searchBox(
   high: Float64Array,
   effort: number,
   shouldStop: (() => boolean) | undefined,
-  stopAt: (middle: Float64Array) => boolean,
+  judge: (middle: Float64Array) => number | null,
 ): SearchResult {
   const { model, newton, system, interval } = space
   const { n } = model
@@ -128,12 +123,13 @@ export function searchBox(
       result.finished = false
       break
     }
-    const outcome = reduce(box, xlo, xhi)
+    const outcome = reduce(xlo, xhi)
     if (outcome === 'done') continue
     if (isSmall(xlo, xhi)) {
       for (let j = 0; j < n; j++) point[j] = ((xlo[j] as number) + (xhi[j] as number)) / 2
-      noteUndecided(result, point, xlo, xhi, width)
-      if (result.undecided.length >= mostUndecided || stopAt(point)) {
+      const share = judge(point)
+      if (share !== null) noteUndecided(result, point, xlo, xhi, width, share)
+      if (share === null || result.undecided.length >= mostUndecided) {
         result.finished = false
         break
       }
@@ -150,7 +146,7 @@ export function searchBox(
   return result
 
   /** 'done': decided. 'linear': the Jacobian enclosure of the box is in the workspace. 'none': it is unbounded. */
-  function reduce(box: Float64Array, xlo: Float64Array, xhi: Float64Array): 'done' | 'linear' | 'none' {
+  function reduce(xlo: Float64Array, xhi: Float64Array): 'done' | 'linear' | 'none' {
     let state: 'linear' | 'none' = 'none'
     for (let round = 0; round < 8; round++) {
       for (let j = 0; j < n; j++) before[j] = (xhi[j] as number) - (xlo[j] as number)
@@ -161,8 +157,7 @@ export function searchBox(
       state = linearise(interval, system, xlo, xhi) ? 'linear' : 'none'
       if (state === 'none') return state
       if (isInjective(interval, xlo, xhi)) {
-        const verdict = onlyZero(box, xlo, xhi)
-        if (verdict) return 'done'
+        if (onlyZero(xlo, xhi)) return 'done'
       }
       for (let j = 0; j < n; j++) center[j] = (xlo[j] as number) + 0.5 * ((xhi[j] as number) - (xlo[j] as number))
       if (!sweep(interval, system, center, xlo, xhi)) return 'done'
@@ -188,18 +183,14 @@ export function searchBox(
    * The box holds one zero at most. Finds it; true where the box is decided: its zero is proved (and listed), or the
    * only zero of the box grown by it lies outside.
    */
-  function onlyZero(_box: Float64Array, xlo: Float64Array, xhi: Float64Array): boolean {
+  function onlyZero(xlo: Float64Array, xhi: Float64Array): boolean {
     for (const zero of result.zeros) if (liesWithin(zero.x, xlo, xhi)) return true
     for (let j = 0; j < n; j++) point[j] = (xlo[j] as number) + 0.5 * ((xhi[j] as number) - (xlo[j] as number))
     if (!approach(newton, p, point, 12, null)) return false
     const polished = polish(newton, p, point)
     if (polished === null || !polished.simple) return false
-    for (const zero of result.zeros)
-      if (
-        zero.x.every((v, j) => Math.abs(v - (point[j] as number)) <= 1e-9 * (width[j] as number)) &&
-        reaches(zero.x, xlo, xhi)
-      )
-        return true
+    // A zero that is known already, on the other side of a cut perhaps.
+    if (result.zeros.some((zero) => isSameZero(zero, point, width)) && reaches(point, xlo, xhi)) return true
     if (!reaches(point, xlo, xhi)) return false
     const [boxLo, boxHi] = [new Float64Array(n), new Float64Array(n)]
     const radius = proveNear(interval, system, point, width, boxLo, boxHi)
@@ -254,6 +245,11 @@ export function searchBox(
   }
 }
 
+/** Is the point within the box on which the zero is proved to be the only one? */
+export function isSameZero(zero: ProvedZero, point: Float64Array, width: Float64Array): boolean {
+  return point.every((v, j) => Math.abs(v - (zero.x[j] as number)) <= zero.radius * (width[j] as number))
+}
+
 function liesWithin(x: Float64Array, xlo: Float64Array, xhi: Float64Array): boolean {
   for (let j = 0; j < x.length; j++) {
     if ((x[j] as number) < (xlo[j] as number) || (x[j] as number) > (xhi[j] as number)) return false
@@ -269,18 +265,19 @@ function liesIn(xlo: Float64Array, xhi: Float64Array, middle: Float64Array, radi
   return true
 }
 
-/** Adds a small box to the place it belongs to, or makes it a place of its own. */
+/** Adds a small box as a place of its own; its size is that of its coordinates, at least a thousandth of the box. */
 function noteUndecided(
   result: SearchResult,
   middle: Float64Array,
   xlo: Float64Array,
   xhi: Float64Array,
   width: Float64Array,
+  share: number,
 ): void {
-  for (const place of result.undecided) {
-    if (middle.every((v, j) => Math.abs(v - (place.middle[j] as number)) <= 1.5 * (place.radius[j] as number))) return
-  }
-  const radius = width.map((w, j) => Math.max(0.5 * samePlace * w, (xhi[j] as number) - (xlo[j] as number)))
+  const radius = width.map((w, j) => {
+    const size = Math.min(w, Math.max(Math.abs(middle[j] as number), 1e-3 * w))
+    return Math.max(share * size, 2 * ((xhi[j] as number) - (xlo[j] as number)))
+  })
   result.undecided.push({ middle: middle.slice(), radius })
 }
 

@@ -9,18 +9,30 @@
 
 import { createLu, factorBordered, solveLu } from '#shared/numerics/linear-solve.ts'
 import { type SingularValues, singularValues } from '#shared/numerics/singular-values.ts'
-import { allFinite, largest, type NewtonSpace, setRowScale } from './steady-newton.ts'
+import { allFinite, type NewtonSpace, setRowScale } from './newton-space.ts'
 
 /** Smallest singular value, relative to the largest, below which a zero counts as multiple. */
 const singularBelow = 1e-7
 
 /** J at x in box widths and row scales, decomposed; null where not finite. */
 function scaledDecomposition(space: NewtonSpace, p: Float64Array, x: Float64Array): SingularValues | null {
-  const { model, n, f, j, width, rowScale } = space
+  const { model, n, f, j, width, rowScale, trial } = space
+  // A row that vanishes at a multiple zero shows its size a thousandth of the box away.
+  const sizes = new Float64Array(n)
+  for (const side of [1, -1]) {
+    for (let k = 0; k < n; k++) trial[k] = (x[k] as number) + side * 1e-3 * (width[k] as number) * Math.cos(k + 0.5)
+    model.jacobian(trial, p, f, j)
+    setRowScale(space)
+    for (let i = 0; i < n; i++) {
+      const size = rowScale[i] as number
+      if (Number.isFinite(size)) sizes[i] = Math.max(sizes[i] as number, size)
+    }
+  }
   model.jacobian(x, p, f, j)
-  space.evaluations++
+  space.evaluations += 3
   if (!allFinite(f) || !allFinite(j)) return null
   setRowScale(space)
+  for (let i = 0; i < n; i++) rowScale[i] = Math.max(rowScale[i] as number, sizes[i] as number)
   const scaled = j.map((value, at) => {
     const i = Math.floor(at / n)
     return (value * (width[at - i * n] as number)) / (rowScale[i] as number)
@@ -28,11 +40,20 @@ function scaledDecomposition(space: NewtonSpace, p: Float64Array, x: Float64Arra
   return singularValues(scaled, n)
 }
 
-/** Is the Jacobian singular at x, as far as rounding lets one tell? Judged in box widths and row scales. */
-export function isSingularAt(space: NewtonSpace, p: Float64Array, x: Float64Array): boolean {
+/**
+ * Is x, a zero that could not be proved simple, one where others meet it? True where the reduced function a1 r + a2 r² +
+ * a3 r³ (r in box widths) has another zero within 1e-6, where it vanishes altogether, or where two directions are null.
+ */
+export function isMultipleAt(space: NewtonSpace, p: Float64Array, x: Float64Array): boolean {
   const s = scaledDecomposition(space, p, x)
   if (s === null) return false
-  return (s.values[space.n - 1] as number) < singularBelow * (s.values[0] as number) || s.values[0] === 0
+  const { n } = space
+  const top = s.values[0] as number
+  if (n > 1 && (s.values[n - 2] as number) <= singularBelow * top) return true
+  const reduced = reducedExpansion(space, p, x.slice(), s)
+  if (reduced === null) return (s.values[n - 1] as number) <= singularBelow * top
+  const [a1, a2, a3] = reduced.coefficients.map(Math.abs) as [number, number, number]
+  return a1 <= 1e-6 * a2 || a1 <= 1e-12 * a3 || a1 <= 1e-14
 }
 
 /**
@@ -98,15 +119,29 @@ function returnsToCurve(
   return false
 }
 
+interface ReducedExpansion {
+  /** a1, a2, a3 of the reduced function. */
+  coefficients: [number, number, number]
+  /** Direction in which x moves per box width along the null direction. */
+  direction: Float64Array
+}
+
 /**
- * Moves an approximate multiple zero (one null direction) to where the reduced function's first or second derivative
- * vanishes. Leaves x as it is where that does not converge or F gets larger than rounding explains.
+ * Moves x onto F + mu b = 0 (one bordered Newton step) and expands mu along that curve to third order. `s` is the scaled
+ * decomposition at x, with F and J of that point in `space`.
  */
-export function polishMultiple(space: NewtonSpace, p: Float64Array, x: Float64Array): void {
-  const { model, n, f, j, width } = space
-  const y = x.slice()
+function reducedExpansion(
+  space: NewtonSpace,
+  p: Float64Array,
+  x: Float64Array,
+  s: SingularValues,
+): ReducedExpansion | null {
+  const { model, n, f, j, width, rowScale } = space
   const bordered = createLu(n + 1)
   const jets = new Float64Array(4 * n)
+  const b = Float64Array.from({ length: n }, (_, i) => (s.u[i * n + n - 1] as number) * (rowScale[i] as number))
+  const c = Float64Array.from({ length: n }, (_, k) => (s.v[k * n + n - 1] as number) / (width[k] as number))
+  if (!factorBordered(bordered, j, b, c, 0)) return null
   const solve = (rhs: (i: number) => number, last: number): Float64Array => {
     const out = new Float64Array(n + 1)
     for (let i = 0; i < n; i++) out[i] = rhs(i)
@@ -115,45 +150,69 @@ export function polishMultiple(space: NewtonSpace, p: Float64Array, x: Float64Ar
     return out
   }
   const secondOrder = (u: Float64Array): Float64Array => {
-    model.jet(y, p, u, null, 2, jets)
+    model.jet(x, p, u, null, 2, jets)
     return jets.slice(2 * n, 3 * n)
   }
+  const back = solve((i) => -(f[i] as number), 0)
+  for (let k = 0; k < n; k++) x[k] = (x[k] as number) + (back[k] as number)
+  const first = solve(() => 0, 1)
+  const x1 = first.slice(0, n)
+  model.jet(x, p, x1, null, 3, jets)
+  const [q2, q3] = [jets.slice(2 * n, 3 * n), jets.slice(3 * n, 4 * n)]
+  const second = solve((i) => -(q2[i] as number), 0)
+  const x2 = second.slice(0, n)
+  const plus = secondOrder(x1.map((v, k) => v + (x2[k] as number)))
+  const minus = secondOrder(x1.map((v, k) => v - (x2[k] as number)))
+  const third = solve((i) => -(q3[i] as number) - ((plus[i] as number) - (minus[i] as number)) / 2, 0)
+  const coefficients: [number, number, number] = [first[n] as number, second[n] as number, third[n] as number]
+  return coefficients.every(Number.isFinite) && allFinite(x) ? { coefficients, direction: x1 } : null
+}
+
+/**
+ * Moves an approximate multiple zero (one null direction) to where the reduced function's first or second derivative
+ * vanishes. Leaves x as it is where that does not converge or leads away. Returns the multiplicity it went for, 2 or 3.
+ */
+export function polishMultiple(space: NewtonSpace, p: Float64Array, x: Float64Array): 2 | 3 {
+  const { n, width } = space
+  const y = x.slice()
   let last = Number.POSITIVE_INFINITY
+  let multiplicity: 2 | 3 = 2
   for (let round = 0; round < 12; round++) {
     const s = scaledDecomposition(space, p, y)
-    if (s === null) return
-    const { rowScale } = space
-    const b = Float64Array.from({ length: n }, (_, i) => (s.u[i * n + n - 1] as number) * (rowScale[i] as number))
-    const c = Float64Array.from({ length: n }, (_, k) => (s.v[k * n + n - 1] as number) / (width[k] as number))
-    if (!factorBordered(bordered, j, b, c, 0)) return
-    // Back onto F + mu b = 0, then the expansion of x and mu along the null direction.
-    const back = solve((i) => -(f[i] as number), 0)
-    for (let k = 0; k < n; k++) y[k] = (y[k] as number) + (back[k] as number)
-    const first = solve(() => 0, 1)
-    const x1 = first.slice(0, n)
-    model.jet(y, p, x1, null, 3, jets)
-    const [q2, q3] = [jets.slice(2 * n, 3 * n), jets.slice(3 * n, 4 * n)]
-    const second = solve((i) => -(q2[i] as number), 0)
-    const x2 = second.slice(0, n)
-    const plus = secondOrder(x1.map((v, k) => v + (x2[k] as number)))
-    const minus = secondOrder(x1.map((v, k) => v - (x2[k] as number)))
-    const third = solve((i) => -(q3[i] as number) - ((plus[i] as number) - (minus[i] as number)) / 2, 0)
-    const [a1, a2, a3] = [first[n] as number, second[n] as number, third[n] as number]
-    const shift = Math.abs(a2) > 1e-3 * Math.abs(a3) ? -a1 / (2 * a2) : -a2 / (3 * a3)
-    if (!Number.isFinite(shift) || Math.abs(shift) > 0.01) return
-    for (let k = 0; k < n; k++) y[k] = (y[k] as number) + shift * (x1[k] as number)
+    if (s === null) return multiplicity
+    const reduced = reducedExpansion(space, p, y, s)
+    if (reduced === null) return multiplicity
+    const [a1, a2, a3] = reduced.coefficients
+    multiplicity = Math.abs(a2) > 1e-3 * Math.abs(a3) ? 2 : 3
+    const shift = multiplicity === 2 ? -a1 / (2 * a2) : -a2 / (3 * a3)
+    if (!Number.isFinite(shift) || Math.abs(shift) > 0.01) return multiplicity
+    for (let k = 0; k < n; k++) y[k] = (y[k] as number) + shift * (reduced.direction[k] as number)
     const size = Math.abs(shift)
-    if (size < 1e-13 || size >= 0.5 * last) break
+    if (size < 1e-15 || size >= 0.5 * last) break
     last = size
   }
-  model.rhs(x, p, f)
-  const before = largest(f)
-  const s = scaledDecomposition(space, p, y)
-  if (s === null) return
-  const noise = largest(space.rowScale) * 1e-13
-  const moved = y.reduce(
-    (most, value, k) => Math.max(most, Math.abs(value - (x[k] as number)) / (width[k] as number)),
-    0,
-  )
-  if (moved < 1e-3 && largest(f) <= Math.max(before, noise)) x.set(y)
+  if (!allFinite(y)) return multiplicity
+  let moved = 0
+  for (let k = 0; k < n; k++)
+    moved = Math.max(moved, Math.abs((y[k] as number) - (x[k] as number)) / (width[k] as number))
+  if (moved < 1e-3) x.set(y)
+  return multiplicity
+}
+
+/** Minimum-norm Newton step -J⁺ F in box widths, for exactly singular Jacobians; null where not finite. */
+export function pseudoStep(space: NewtonSpace, p: Float64Array, x: Float64Array): Float64Array | null {
+  const { n, f, width, rowScale } = space
+  const s = scaledDecomposition(space, p, x)
+  if (s === null) return null
+  const step = new Float64Array(n)
+  for (let m = 0; m < n; m++) {
+    const value = s.values[m] as number
+    if (!(value > 1e-10 * (s.values[0] as number))) break
+    let along = 0
+    for (let i = 0; i < n; i++) along += ((s.u[i * n + m] as number) * (f[i] as number)) / (rowScale[i] as number)
+    for (let k = 0; k < n; k++) {
+      step[k] = (step[k] as number) - ((s.v[k * n + m] as number) * along * (width[k] as number)) / value
+    }
+  }
+  return step
 }

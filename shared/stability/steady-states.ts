@@ -7,10 +7,18 @@
  */
 
 import { proveNear } from '#shared/numerics/krawczyk.ts'
-import { allFinite, approach, createNewtonSpace, type NewtonSpace, polish } from './steady-newton.ts'
+import { allFinite, createNewtonSpace, largest, type NewtonSpace } from './newton-space.ts'
+import { approach, polish, snapToZero } from './steady-newton.ts'
 import type { SearchableModel } from './steady-search.ts'
-import { createSearchSpace, type SearchResult, type SearchSpace, searchBox } from './steady-search.ts'
-import { isContinuum, isSingularAt, polishMultiple } from './steady-singular.ts'
+import {
+  createSearchSpace,
+  isSameZero,
+  type ProvedZero,
+  type SearchResult,
+  type SearchSpace,
+  searchBox,
+} from './steady-search.ts'
+import { isContinuum, isMultipleAt, polishMultiple } from './steady-singular.ts'
 import { startPoints } from './steady-starts.ts'
 
 export interface FoundState {
@@ -40,7 +48,7 @@ export interface SteadyStateResult {
 }
 
 export interface SteadyStateOptions {
-  /** Budget of the search in interval operations (one is about 10 to 30 ns); deterministic. Default 6 million. */
+  /** Budget of the search in interval operations (one is about 10 to 30 ns); deterministic. Default 3 million. */
   effort?: number
   /** Ends the search early; what has been found is returned as not complete. */
   shouldStop?: () => boolean
@@ -48,7 +56,7 @@ export interface SteadyStateOptions {
   guesses?: readonly Float64Array[]
 }
 
-const defaultEffort = 6e6
+const defaultEffort = 3e6
 const sameShare = 1e-6
 const edgeShare = 1e-9
 
@@ -84,27 +92,31 @@ export function findSteadyStates(
   // A continuum that Newton meets at once need not spend the search's budget first.
   for (const start of starts.slice(0, 3)) {
     const x = start.slice()
-    if (!approach(newton, p, x, 30, null)) continue
-    if (list.add(x)?.multiple && list.continuum) break
+    if (approach(newton, p, x, 30, null)) list.add(x)
+    if (list.continuum) break
   }
   let found: SearchResult = { zeros: [], undecided: [], left: [], finished: false, boxes: 0 }
   if (!list.continuum) {
-    const stopAt = (middle: Float64Array): boolean => {
-      const x = middle.slice()
-      if (approach(newton, p, x, 60, null)) list.add(x)
-      return list.continuum
+    const judge = (middle: Float64Array): number | null => {
+      const multiplicity = list.addUndecided(middle)
+      return list.continuum ? null : multiplicity === 3 ? 1e-4 : multiplicity === 2 ? 1e-6 : 1e-8
     }
-    found = searchBox(search, p, low, high, options.effort ?? defaultEffort, options.shouldStop, stopAt)
-    for (const zero of found.zeros) list.addProved(zero.x)
+    found = searchBox(search, p, low, high, options.effort ?? defaultEffort, options.shouldStop, judge)
+    for (const zero of found.zeros) list.addProved(zero)
   }
-  for (const place of found.undecided) list.addUndecided(place.middle)
   if (!found.finished && !options.shouldStop?.()) searchFromStarts(list, [...found.left, ...starts], options.shouldStop)
 
-  const unresolved = found.undecided.length
-  const allProved = list.states.every((state) => state.proved)
+  // The strip of 1e-9 around the box lends its zeros, it does not have to be decided.
+  const unresolved = found.undecided.filter(({ middle, radius }) =>
+    model.system.states.every(
+      (state, j) =>
+        (middle[j] as number) + (radius[j] as number) >= state.low &&
+        (middle[j] as number) - (radius[j] as number) <= state.high,
+    ),
+  ).length
   return {
     states: list.states,
-    complete: found.finished && unresolved === 0 && !list.continuum && allProved,
+    complete: found.finished && unresolved === 0 && !list.continuum && list.states.every((state) => state.proved),
     continuum: list.continuum,
     unresolved,
     notFinite,
@@ -120,7 +132,8 @@ function isFiniteAt(newton: NewtonSpace, p: Float64Array, x: Float64Array): bool
 /** Damped Newton from every start point with what is known deflated, until the last rounds found nothing new. */
 function searchFromStarts(list: StateList, starts: Float64Array[], shouldStop: (() => boolean) | undefined): void {
   const { newton, p } = list
-  const allowance = newton.evaluations + 6000
+  const cost = list.instructions + newton.n ** 3 / 10
+  const allowance = newton.evaluations + Math.min(6000, 1.5e6 / cost)
   let idle = 0
   for (const start of starts) {
     if (newton.evaluations > allowance || idle > 60 || shouldStop?.()) return
@@ -141,8 +154,14 @@ class StateList {
   readonly newton: NewtonSpace
   readonly p: Float64Array
   readonly #search: SearchSpace
+  readonly #proved: ProvedZero[] = []
   readonly #low: Float64Array
   readonly #high: Float64Array
+
+  /** Instructions of F and J, the cost of one Newton step besides its solve. */
+  get instructions(): number {
+    return this.#search.model.instructions?.jacobian ?? this.newton.n ** 2
+  }
 
   constructor(newton: NewtonSpace, search: SearchSpace, p: Float64Array, low: Float64Array, high: Float64Array) {
     this.newton = newton
@@ -153,99 +172,90 @@ class StateList {
     search.parameters.current = p
   }
 
-  /** Polishes and adds a point near a zero; returns its entry, or null where it is none or lies outside the box. */
-  add(x: Float64Array): FoundState | null {
+  /** Polishes and adds a point near a zero, unless it is none or lies outside the box. */
+  add(x: Float64Array): void {
     const { newton, p } = this
     const polished = polish(newton, p, x)
-    if (polished === null || !this.#isInside(x)) return null
-    if (!polished.simple && !this.#isZero(x)) return null
-    const multiple = isSingularAt(newton, p, x)
-    if (multiple) return this.#addMultiple(x)
-    if (!polished.simple && polished.step > 1e-9) return null
-    const known = this.#find(x)
-    if (known !== undefined) return known
-    return this.#push(x, polished.residual, this.#isProved(x), false)
+    if (polished === null || !this.#isInside(x)) return
+    if (this.#proved.some((zero) => isSameZero(zero, x, newton.width))) return
+    const radius = this.#proofRadius(x)
+    if (radius !== null) this.addProved({ x, radius })
+    else if (this.#isListed(x)) return
+    else if (isMultipleAt(newton, p, x)) this.#addMultiple(x)
+    else if (polished.simple) this.#push(x, false, false)
   }
 
-  /** A zero that the search has proved. */
-  addProved(x: Float64Array): void {
-    if (!this.#isInside(x)) return
-    const known = this.#find(x)
-    if (known !== undefined && !known.proved) this.states.splice(this.states.indexOf(known), 1)
-    else if (
-      known?.proved &&
-      known.x.every((v, j) => Math.abs(v - (x[j] as number)) <= 1e-9 * (this.newton.width[j] as number))
-    )
-      return
-    this.newton.model.rhs(x, this.p, this.newton.f)
-    this.#push(x.slice(), largestOf(this.newton.f), true, false)
+  /** A zero that is proved; it takes the place of an unproved find. Proved ones are told apart however near they are. */
+  addProved(zero: ProvedZero): void {
+    const { width } = this.newton
+    if (!this.#isInside(zero.x) || this.#proved.some((known) => isSameZero(known, zero.x, width))) return
+    const unproved = this.states.findIndex((state) => !state.proved && this.#isNear(state.x, zero.x))
+    if (unproved >= 0) this.states.splice(unproved, 1)
+    this.#proved.push(zero)
+    this.#push(zero.x, true, false)
   }
 
-  /** The middle of a place that could not be decided: listed if F vanishes there as far as rounding lets one see. */
-  addUndecided(middle: Float64Array): void {
+  /**
+   * The middle of a place that could not be decided: listed as a multiple zero if F vanishes there as far as rounding
+   * lets one see. Returns the multiplicity that polishing went for, null where it is no zero.
+   */
+  addUndecided(middle: Float64Array): 2 | 3 | null {
+    const { newton, p } = this
     const x = middle.slice()
-    const { newton, p } = this
-    if (polish(newton, p, x) === null) return
+    const multiplicity = polishMultiple(newton, p, x)
     const moved = x.some((v, j) => Math.abs(v - (middle[j] as number)) > 1e-3 * (newton.width[j] as number))
-    if (moved || !this.#isInside(x) || !this.#isZero(x)) return
+    if (moved || !this.#isInside(x) || !this.#mayVanish(x)) return null
     this.#addMultiple(x)
+    return multiplicity
   }
 
-  #addMultiple(x: Float64Array): FoundState | null {
+  #addMultiple(x: Float64Array): void {
     const { newton, p } = this
-    if (!this.continuum && isContinuum(newton, p, x)) this.continuum = true
-    if (this.continuum) {
-      // One member stands for all of them: the first, which is the one nearest the start values.
-      const known = this.states.find((state) => state.multiple)
-      if (known !== undefined) return known
-    } else {
+    if (!this.continuum) this.continuum = isContinuum(newton, p, x)
+    // One member stands for a continuum: the first, found from the start values.
+    if (this.continuum && this.states.some((state) => state.multiple)) return
+    if (!this.continuum) {
       polishMultiple(newton, p, x)
-      if (!this.#isInside(x)) return null
+      snapToZero(newton, p, x)
     }
-    const known = this.#find(x)
-    if (known !== undefined) return known
-    newton.model.rhs(x, p, newton.f)
-    return this.#push(x, largestOf(newton.f), false, true)
+    if (this.#isInside(x) && this.#mayVanish(x) && !this.#isListed(x)) this.#push(x, false, true)
   }
 
-  #push(x: Float64Array, residual: number, proved: boolean, multiple: boolean): FoundState {
-    const state = { x: x.slice(), residual, proved, multiple }
-    this.states.push(state)
-    return state
+  #push(x: Float64Array, proved: boolean, multiple: boolean): void {
+    const { newton, p } = this
+    newton.model.rhs(x, p, newton.f)
+    this.states.push({ x: x.slice(), residual: largest(newton.f), proved, multiple })
   }
 
   #isInside(x: Float64Array): boolean {
     return x.every((v, j) => v >= (this.#low[j] as number) && v <= (this.#high[j] as number))
   }
 
-  #find(x: Float64Array): FoundState | undefined {
+  #isListed(x: Float64Array): boolean {
+    return this.states.some((state) => this.#isNear(state.x, x))
+  }
+
+  /** Within 1e-6 of the box, or of the coordinates' own size where the box is a thousand times wider. */
+  #isNear(x: Float64Array, y: Float64Array): boolean {
+    return this.newton.width.every((w, j) => {
+      const size = Math.min(w, Math.max(Math.abs(x[j] as number), 1e-3 * w))
+      return Math.abs((x[j] as number) - (y[j] as number)) <= sameShare * size
+    })
+  }
+
+  /** Is zero within the enclosure of F over 1e-8 of a width around x? */
+  #mayVanish(x: Float64Array): boolean {
+    const { interval, system } = this.#search
     const { width } = this.newton
-    return this.states.find((state) =>
-      state.x.every((v, j) => Math.abs(v - (x[j] as number)) <= sameShare * (width[j] as number)),
-    )
+    const reach = (j: number): number => 1e-8 * Math.max(Math.min(width[j] as number, 1), Math.abs(x[j] as number))
+    const [low, high] = [x.map((v, j) => v - reach(j)), x.map((v, j) => v + reach(j))]
+    system.value(low, high, interval.flo, interval.fhi)
+    return interval.flo.every((v, i) => v <= 0 && (interval.fhi[i] as number) >= 0)
   }
 
-  /** |F_i| below a million roundings of what F_i is made of over the box. */
-  #isZero(x: Float64Array): boolean {
-    const { newton, p } = this
-    newton.model.jacobian(x, p, newton.f, newton.j)
-    const { n, f, j, width } = newton
-    for (let i = 0; i < n; i++) {
-      let size = 0
-      for (let k = 0; k < n; k++)
-        size += Math.abs(j[i * n + k] as number) * Math.max(width[k] as number, Math.abs(x[k] as number))
-      if (!(Math.abs(f[i] as number) <= 1e-10 * size + 1e-300)) return false
-    }
-    return true
-  }
-
-  #isProved(x: Float64Array): boolean {
+  #proofRadius(x: Float64Array): number | null {
     const { interval, system } = this.#search
     const [boxLo, boxHi] = [x.slice(), x.slice()]
-    return proveNear(interval, system, x, this.newton.width, boxLo, boxHi) !== null
+    return proveNear(interval, system, x, this.newton.width, boxLo, boxHi)
   }
-}
-
-function largestOf(f: Float64Array): number {
-  return f.reduce((most, value) => Math.max(most, Math.abs(value)), 0)
 }
