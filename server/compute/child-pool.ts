@@ -178,11 +178,18 @@ export function createChildPool(options: ChildPoolOptions): ChildPool {
     })
   }
 
+  /** Background work never takes the last child: people who wait get one at once. */
+  function takeNext(): Job | undefined {
+    const inBackground = [...slots].filter((slot) => slot.running?.background).length
+    if (queue[0]?.background && size > 1 && inBackground >= size - 1) return undefined
+    return queue.shift()
+  }
+
   function next() {
     if (closed) return
     for (const slot of slots) {
       if (!slot.ready || slot.running) continue
-      const job = queue.shift()
+      const job = takeNext()
       if (!job) break
       give(slot, job)
     }

@@ -1,4 +1,5 @@
 import { and, desc, eq, isNull, lt, or, sql } from 'drizzle-orm'
+import { z } from 'zod'
 import type { Queryable } from '#drizzle/client.ts'
 import { draftWriters, groupPrefixes, pageCodes, pages, people, revisions } from '#drizzle/schema/index.ts'
 
@@ -124,17 +125,35 @@ export async function listWriters(
     .orderBy(draftWriters.first, people.id)
 }
 
-/** How many revisions a page ever had, and how many of them were public. */
-export async function countRevisions(db: Queryable, pageId: number): Promise<{ all: number; public: number }> {
+/** How many revisions a page ever had sent. */
+export async function countRevisions(db: Queryable, pageId: number): Promise<number> {
   const [row] = await db
-    .select({
-      all: sql<number>`count(*)`.mapWith(Number),
-      public:
-        sql<number>`count(case when ${revisions.state} in ('in-force', 'superseded', 'withdrawn') then 1 end)`.mapWith(
-          Number,
-        ),
-    })
+    .select({ count: sql<number>`count(*)`.mapWith(Number) })
     .from(revisions)
     .where(eq(revisions.pageId, pageId))
-  return row ?? { all: 0, public: 0 }
+  return row?.count ?? 0
+}
+
+const counts = z.object({
+  revisions: z.coerce.number(),
+  publicRevisions: z.coerce.number(),
+  draftSources: z.coerce.number(),
+  frozenSources: z.coerce.number(),
+})
+
+/** What a page's head counts, in one question. `shownId`: the public revision whose frozen sources are counted. */
+export async function countParts(
+  db: Queryable,
+  pageId: number,
+  shownId: number | null,
+): Promise<z.infer<typeof counts>> {
+  const [rows] = await db.execute(sql`
+    select count(*) as revisions,
+      count(case when r.state in ('in-force', 'superseded', 'withdrawn') then 1 end) as publicRevisions,
+      (select count(distinct l.source_id) from source_links l where l.page_id = ${pageId} and l.removed_at is null) as draftSources,
+      coalesce((select json_length(s.document, '$.citations') from revisions s where s.id = ${shownId}), 0) as frozenSources
+    from revisions r where r.page_id = ${pageId}`)
+  const [row] = z.array(counts).parse(rows)
+  if (!row) throw new Error('A count always has a row.')
+  return row
 }

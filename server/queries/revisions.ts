@@ -1,4 +1,4 @@
-import { and, asc, desc, eq, inArray, sql } from 'drizzle-orm'
+import { and, asc, desc, eq, inArray } from 'drizzle-orm'
 import { alias } from 'drizzle-orm/mysql-core'
 import type { Queryable } from '#drizzle/client.ts'
 import { people, remarks, revisions, signatures } from '#drizzle/schema/index.ts'
@@ -79,15 +79,6 @@ export async function findNewest(db: Queryable, pageId: number, states: readonly
 export async function findDocument(db: Queryable, id: number): Promise<unknown> {
   const [row] = await db.select({ document: revisions.document }).from(revisions).where(eq(revisions.id, id))
   return row?.document ?? null
-}
-
-/** Number of sources frozen in a revision. */
-export async function countCitations(db: Queryable, id: number): Promise<number> {
-  const [row] = await db
-    .select({ count: sql<number>`coalesce(json_length(${revisions.document}, '$.citations'), 0)`.mapWith(Number) })
-    .from(revisions)
-    .where(eq(revisions.id, id))
-  return row?.count ?? 0
 }
 
 /** Every mark ever given on a page, and the number of its last revision. */

@@ -1,4 +1,4 @@
-import { and, asc, eq, isNull, sql } from 'drizzle-orm'
+import { and, asc, eq, isNull } from 'drizzle-orm'
 import type { Queryable } from '#drizzle/client.ts'
 import { sourceLinks, sources } from '#drizzle/schema/index.ts'
 
@@ -13,15 +13,6 @@ export async function listLinks(db: Queryable, pageId: number): Promise<{ link: 
     .innerJoin(sources, eq(sources.id, sourceLinks.sourceId))
     .where(and(eq(sourceLinks.pageId, pageId), isNull(sourceLinks.removedAt)))
     .orderBy(asc(sourceLinks.id))
-}
-
-/** How many sources stand on a page's draft. */
-export async function countSources(db: Queryable, pageId: number): Promise<number> {
-  const [row] = await db
-    .select({ count: sql<number>`count(distinct ${sourceLinks.sourceId})`.mapWith(Number) })
-    .from(sourceLinks)
-    .where(and(eq(sourceLinks.pageId, pageId), isNull(sourceLinks.removedAt)))
-  return row?.count ?? 0
 }
 
 export async function findByDoi(db: Queryable, groupId: number, doi: string): Promise<SourceRow | null> {

@@ -8,7 +8,8 @@ import { changePage, createPage, listPages, readPage, removePage } from '#shared
 export function pageRoutes(api: Api): void {
   mount(api, listPages, ({ db, viewer, query }) => library.list(db, viewer.person?.id ?? null, query))
 
-  mount(api, createPage, async ({ db, compute, group, body, person, now, requestId, events }) => {
+  mount(api, createPage, async ({ db, compute, group, body, person, now, requestId, events, limiter }) => {
+    if (body.document !== undefined) limiter.take('cards', String(person.id))
     const input = { ...body, groupId: group.id, personId: person.id, now, requestId }
     const { id, code } = await newPages.create(db, compute, input)
     events.draftChanged(id)

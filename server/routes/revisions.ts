@@ -43,7 +43,8 @@ export function revisionRoutes(api: Api): void {
     return { revision, other }
   })
 
-  mount(api, sendForReview, async ({ db, compute, page, body, person, now, requestId, events, setEtag }) => {
+  mount(api, sendForReview, async ({ db, compute, page, body, person, now, requestId, events, setEtag, limiter }) => {
+    limiter.take('cards', String(person.id))
     const head = await send(db, compute, { ...body, pageId: page.id, personId: person.id, now, requestId })
     events.pageChanged(page.id)
     setEtag(head.etag)

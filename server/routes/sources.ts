@@ -1,5 +1,6 @@
 import type { HandlerContext } from '#server/http/context.ts'
 import { type Api, mount } from '#server/http/mount.ts'
+import { fromForm, fromPasted } from '#server/services/source-input.ts'
 import * as sources from '#server/services/sources.ts'
 import { addSources, linkSource, listSources, removeSource, unlinkSource } from '#shared/api/sources.ts'
 
@@ -13,7 +14,7 @@ export function sourceRoutes(api: Api): void {
 
   mount(api, addSources, async (context) => {
     const { db, compute, page, body, events } = context
-    const found = body.from === 'pasted' ? await sources.fromPasted(compute, body.pasted) : sources.fromForm(body)
+    const found = body.from === 'pasted' ? await fromPasted(compute, body.pasted) : fromForm(body)
     await sources.add(db, page, { ...actorOf(context), sources: found })
     events.draftChanged(page.id)
     return allOf(context)

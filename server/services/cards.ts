@@ -25,6 +25,8 @@ export function refusalOf(outcome: Refused | ComputeFailure): AppError {
         'analysis-budget',
         'The card could not be computed in the time and memory that one model gets. Narrow the ranges or simplify the model.',
       )
+    case 'aborted':
+      return new AppError('bad-request', 'The request was given up.')
     default:
       return new AppError('not-ready', 'Too many cards are being computed at this moment. Try again.', {
         retryAfter: 5,

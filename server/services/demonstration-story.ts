@@ -22,6 +22,7 @@ import { rewriteDraft } from './rewrite-draft.ts'
 import { send } from './send-revision.ts'
 import { confirmPassword } from './session.ts'
 import { approve, giveBackWithRemarks } from './settle-revision.ts'
+import { fromForm } from './source-input.ts'
 import * as sources from './sources.ts'
 
 export type DemonstrationPage = (typeof pages)[number]
@@ -75,7 +76,7 @@ export async function bringSource(
   const context = await meet(teller, code, by, 'source:write')
   await sources.add(db, context, {
     ...actor,
-    sources: sources.fromForm({ type, title, year, publisher, authors: [] }),
+    sources: fromForm({ type, title, year, publisher, authors: [] }),
   })
   if (!parameter) return
   const added = (await sourceQueries.listLinks(db, context.id)).at(-1)

@@ -3,12 +3,11 @@ import type { Database, Queryable } from '#drizzle/client.ts'
 import { AppError } from '#server/http/app-error.ts'
 import * as queries from '#server/queries/pages.ts'
 import * as revisionQueries from '#server/queries/revisions.ts'
-import * as sourceQueries from '#server/queries/sources.ts'
 import { cardSummary, type Page, type RevisionHead } from '#shared/api/pages.ts'
 import { mayInPage, type PageAct, pageActs, type ReadAccess } from '#shared/api/roles.ts'
 import { record } from './log.ts'
 import type { PageContext } from './page-context.ts'
-import { publicStates, toHead } from './revision-head.ts'
+import { publicStates, toHeads } from './revision-head.ts'
 
 export interface Actor {
   personId: number
@@ -29,21 +28,20 @@ export const titleBlockOf = (document: { title: string; summary?: string; field?
 
 /** The page's head for one viewer. Drafts, reviews and what was computed from them only for members. */
 export async function read(db: Queryable, context: PageContext, personId: number | null): Promise<Page> {
-  const { row, role } = context
+  const { row, role, inForceId } = context
   const member = role !== 'visitor' && role !== 'stranger'
-  const [inForce, inReview, counts] = await Promise.all([
-    context.inForceId === null ? null : revisionQueries.findHead(db, context.inForceId),
-    member && context.inReviewId !== null ? revisionQueries.findHead(db, context.inReviewId) : null,
-    queries.countRevisions(db, context.id),
-  ])
-  const lastPublic =
-    inForce || row.everPublic === 0 ? null : await revisionQueries.findNewest(db, context.id, publicStates)
-  const head = (found: revisionQueries.HeadRow | null) => (found ? toHead(db, found) : null)
-  const shown = inForce ?? lastPublic
-  const sources = member
-    ? await sourceQueries.countSources(db, context.id)
-    : await revisionQueries.countCitations(db, shown?.id ?? 0)
-  const reviewHead = await head(inReview)
+  const inReviewId = member ? context.inReviewId : null
+  const rows = await revisionQueries.findHeads(
+    db,
+    [inForceId, inReviewId].filter((id) => id !== null),
+  )
+  const last =
+    inForceId !== null || row.everPublic === 0 ? null : await revisionQueries.findNewest(db, context.id, publicStates)
+  const all = last ? [...rows, last] : rows
+  const heads = await toHeads(db, all)
+  const headOf = (id: number | null) => heads[all.findIndex((one) => one.id === id)] ?? null
+  const counts = await queries.countParts(db, context.id, inForceId ?? last?.id ?? null)
+  const inReview = headOf(inReviewId)
   const page: Omit<Page, 'etag'> = {
     id: context.id,
     code: context.code,
@@ -54,12 +52,15 @@ export async function read(db: Queryable, context: PageContext, personId: number
     access: context.access,
     state: member ? context.state : publicState(context.state),
     role,
-    may: mayDo(context, { personId, review: reviewHead, everSent: counts.all > 0 }),
-    inForce: await head(inForce),
-    lastPublic: await head(lastPublic),
-    inReview: reviewHead,
-    draft: member ? await draftOf(db, context, inForce?.digest ?? null) : null,
-    counts: { sources, revisions: member ? counts.all : counts.public },
+    may: mayDo(context, { personId, review: inReview, everSent: counts.revisions > 0 }),
+    inForce: headOf(inForceId),
+    lastPublic: headOf(last?.id ?? null),
+    inReview,
+    draft: member ? await draftOf(db, context, rows.find((one) => one.id === inForceId)?.digest ?? null) : null,
+    counts: {
+      sources: member ? counts.draftSources : counts.frozenSources,
+      revisions: member ? counts.revisions : counts.publicRevisions,
+    },
   }
   return { ...page, etag: etagOf(context, page) }
 }
@@ -143,7 +144,7 @@ export async function remove(
   const { now, personId, requestId } = input
   await db.transaction(async (tx) => {
     const row = await lockSeen(tx, context, input.ifMatch)
-    if ((await queries.countRevisions(tx, context.id)).all > 0) {
+    if ((await queries.countRevisions(tx, context.id)) > 0) {
       throw new AppError('may-not', 'A revision of this page was sent for review, so its record stays.')
     }
     await queries.changePage(tx, context.id, { removedAt: now, changedAt: now })

@@ -6,7 +6,7 @@ import * as pageQueries from '#server/queries/pages.ts'
 import * as queries from '#server/queries/sources.ts'
 import type { FormattedSource, LocatorLabel, SourceTarget } from '#shared/api/sources.ts'
 import { sameSymbol } from '#shared/stability/summary.ts'
-import { type CleanSource, type CslItem, cleanSources, doiOf, plainReference, titleOf, urlOf, yearOf } from './csl.ts'
+import { type CleanSource, type CslItem, doiOf, plainReference, titleOf, urlOf, yearOf } from './csl.ts'
 import { type PlacedLink, readDraftDocument } from './draft-document.ts'
 import { keepSource } from './keep-source.ts'
 import { record } from './log.ts'
@@ -78,58 +78,6 @@ async function change(
     await pageQueries.noteDraftChange(tx, row.id, now)
     await record(tx, { at: now, personId, act, target: `page ${row.code}`, after, requestId })
   })
-}
-
-/** A source typed field by field. */
-export interface TypedSource {
-  type: string
-  title: string
-  authors: readonly { family: string; given?: string }[]
-  year?: string
-  container?: string
-  publisher?: string
-  volume?: string
-  issue?: string
-  pages?: string
-  doi?: string
-  url?: string
-}
-
-export function fromForm(form: TypedSource): CleanSource[] {
-  const { type, title, authors, year, container, publisher, volume, issue, pages, doi, url } = form
-  const cleaned = cleanSources([
-    {
-      type,
-      title,
-      author: authors.map(({ family, given }) => ({ family, given })),
-      ...(year ? { issued: { 'date-parts': [[Number(year)]] } } : {}),
-      'container-title': container,
-      publisher,
-      volume,
-      issue,
-      page: pages,
-      DOI: doi,
-      URL: url,
-    },
-  ])
-  if (!cleaned.ok) throw new AppError('source-refused', cleaned.message)
-  return cleaned.sources
-}
-
-/** Sources in pasted BibTeX or CSL-JSON. @throws {AppError} `source-refused` saying what is wrong, `not-ready`. */
-export async function fromPasted(compute: Compute, text: string): Promise<CleanSource[]> {
-  const outcome = await compute.citations.read(text)
-  if (!outcome.ok) {
-    if (outcome.reason === 'deadline' || outcome.reason === 'crashed') {
-      throw new AppError('source-refused', 'This text could not be read in the time that one paste gets.')
-    }
-    throw new AppError('not-ready', 'Sources cannot be read at this moment. Try again.', { retryAfter: 5 })
-  }
-  if (!outcome.read.ok) throw new AppError('source-refused', outcome.read.message)
-  const cleaned = cleanSources(outcome.read.items)
-  if (cleaned.ok) return cleaned.sources
-  const { message, path } = cleaned
-  throw new AppError('source-refused', message, { errors: [{ code: 'source-refused', message, path }] })
 }
 
 /** Adds sources to the group and attaches them to the page. One that is there already is used again. */

@@ -50,6 +50,15 @@ describe('the pool of child processes', () => {
     expect((await echo(pool, 2)).value).toBe(2)
   })
 
+  test('bounds the memory beside the heap as well', async () => {
+    const pool = poolOf({ deadline: 60_000 })
+    const outcome = await pool.run({ act: 'buffers' })
+    // The system refuses the allocation: the child throws or dies, but never gets far beyond 600 MB.
+    expect(outcome.ok).toBe(false)
+    expect(['failed', 'crashed']).toContain(outcome.ok ? '' : outcome.reason)
+    expect((await echo(pool, 2)).value).toBe(2)
+  })
+
   test('survives a child that exits and one that throws; the latter lives on', async () => {
     const pool = poolOf()
     expect(await pool.run({ act: 'exit' })).toEqual({ ok: false, reason: 'crashed' })
@@ -118,6 +127,15 @@ describe('the pool of child processes', () => {
       pool.run({ act: 'wait' }, { background }).then(() => order.push(name))
     await Promise.all([run('first', false), run('quiet', true), run('second', false), run('third', false)])
     expect(order).toEqual(['first', 'second', 'third', 'quiet'])
+  })
+
+  test('keeps one child free of background jobs', async () => {
+    const pool = poolOf({ size: 2 })
+    await vi.waitFor(() => expect(pool.state().ready).toHaveLength(2), 30_000)
+    const quiet = [1, 2, 3].map((value) => pool.run({ act: 'wait', value }, { background: true }))
+    expect(pool.state()).toMatchObject({ running: 1, waiting: 2 })
+    expect((await echo(pool, 'now')).value).toBe('now')
+    expect((await Promise.all(quiet)).every((outcome) => outcome.ok)).toBe(true)
   })
 
   test('answers every job and leaves no child behind when closed', async () => {

@@ -2,7 +2,7 @@ import * as Y from 'yjs'
 import { append, loadDocument } from '#collab/persistence.ts'
 import type { Database } from '#drizzle/client.ts'
 import { type Compute, createCompute } from '#server/compute/compute.ts'
-import { limits } from '#server/limits.ts'
+import { type Limits, limits } from '#server/limits.ts'
 import { findPageByCode } from '#server/queries/pages.ts'
 import { createDraftCards } from '#server/services/draft-cards.ts'
 import { type Page, page as pageContract, type RevisionHead, revisionHead } from '#shared/api/pages.ts'
@@ -40,7 +40,8 @@ export function oscillator(changes: Partial<ModelDocument> & { hard?: boolean } 
 export async function createLibrary(options: TestAppOptions & { compute?: Compute } = {}) {
   const compute =
     options.compute ?? createCompute({ ...limits.compute, cardDeadline: 60_000, citationDeadline: 60_000 })
-  const app = await createTestApp({ ...options, compute })
+  const many = (given: Limits): Limits => ({ ...given, rate: { ...given.rate, cards: 1_000_000 } })
+  const app = await createTestApp({ limits: many, ...options, compute })
   const { db, events, people } = app
   const draftCards = createDraftCards({
     db,
