@@ -1,6 +1,7 @@
 import { useMemo, useState } from 'react'
 import { Cell, Row, Table } from '#src/components/table.tsx'
 import { classes } from '#src/lib/class-names.ts'
+import { FigureText } from './figure-text.tsx'
 import { type BranchRow, branchRows, type SortKey, sortedRows } from './geometry/branch-rows.ts'
 import { eigenTexts } from './geometry/eigen-text.ts'
 import { figure, rateUnit, signedFigure } from './geometry/figures.ts'
@@ -35,7 +36,7 @@ export function BranchTable({ geometry, older }: { geometry: CardGeometry; older
   return (
     <Table
       caption={`Steady states along the ${nameOf(subject.control)}`}
-      className={classes('max-h-[460px] overflow-y-auto', older && 'card-older')}
+      className={classes('max-h-[460px] overflow-y-auto', older && 'card-older-words')}
     >
       <thead className="sticky top-0 bg-sheet">
         <tr className="border-b-[1.5px] border-ink">
@@ -71,9 +72,11 @@ export function BranchTable({ geometry, older }: { geometry: CardGeometry; older
               {row.event ? row.event.text : figure(row.p, copied)}
               {row.event && <span className="ml-2 font-sans font-[620]">{row.event.name}</span>}
             </Cell>
-            <Cell className="figures px-3 py-1 text-note">{figure(row.value, copied)}</Cell>
             <Cell className="figures px-3 py-1 text-note">
-              {row.growth === null ? 'none' : signedFigure(row.growth, 4)}
+              <FigureText text={figure(row.value, copied)} />
+            </Cell>
+            <Cell className="figures px-3 py-1 text-note">
+              <FigureText text={row.growth === null ? 'none' : signedFigure(row.growth, 4)} />
             </Cell>
             <Cell className="px-3 py-1">{stableText(row)}</Cell>
           </Row>

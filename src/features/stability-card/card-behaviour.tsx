@@ -7,7 +7,8 @@ import { Drawing } from './drawing.tsx'
 import { DrawingKey } from './drawing-key.tsx'
 import { EigenPlane } from './eigen-plane.tsx'
 import { drawingSentences } from './geometry/describe.ts'
-import { growthReadout, onsetReadouts, sameOnset } from './geometry/readouts.ts'
+import { growthReadout, limitReadouts, onsetReadouts, sameOnset } from './geometry/readouts.ts'
+import { nearestLimit } from './geometry/running.ts'
 import type { CardGeometry } from './geometry/scene.ts'
 import { shownBranch } from './geometry/shown-branch.ts'
 import { statesAt } from './geometry/states-at.ts'
@@ -53,7 +54,10 @@ export function CardBehaviour(props: CardBehaviourProps) {
   const chosen = events.find((event) => event.id === lit && event.kind === 'onset')?.index ?? main
   const point = chosen === null ? null : (card.hopf?.[chosen] ?? null)
   const before = point && earlierCard ? sameOnset(point, earlierCard.hopf ?? []) : null
-  const readouts = [...(point ? onsetReadouts(point, before, at, subject) : []), growthReadout(running, at, subject)]
+  const limit = nearestLimit(at, events)
+  const words = older ? 'card-older-words' : undefined
+  const ofLimit = point ? onsetReadouts(point, before, at, subject) : limit ? limitReadouts(limit, at, subject) : []
+  const readouts = [...ofLimit, growthReadout(running, at, subject)]
   return (
     <div className="grid min-w-0 gap-x-6 gap-y-5 @min-[860px]:grid-cols-[minmax(0,1fr)_300px] @min-[1180px]:grid-cols-[minmax(0,780px)_minmax(0,1fr)]">
       <div className="grid min-w-0 content-start gap-3">
@@ -88,7 +92,11 @@ export function CardBehaviour(props: CardBehaviourProps) {
             <p key={sentence}>{sentence}</p>
           ))}
         </div>
-        {picture === 'drawing' && <DrawingKey geometry={geometry} earlierLabel={earlier?.label ?? null} />}
+        {picture === 'drawing' && (
+          <div className={words}>
+            <DrawingKey geometry={geometry} earlierLabel={earlier?.label ?? null} />
+          </div>
+        )}
         {acts}
         <Readouts
           readouts={readouts}
@@ -122,9 +130,11 @@ export function CardBehaviour(props: CardBehaviourProps) {
             )}
           </div>
         </section>
-        <PointList events={events} subject={subject} at={at} lit={lit} onLit={onLit} headingId={`${id}-list`} />
+        <div className={words}>
+          <PointList events={events} subject={subject} at={at} lit={lit} onLit={onLit} headingId={`${id}-list`} />
+        </div>
       </div>
-      <div className={classes('grid min-w-0 gap-5 @min-[860px]:col-span-2')}>
+      <div className={classes('grid min-w-0 gap-5 @min-[860px]:col-span-2', words)}>
         <SteadyStates card={card} subject={subject} at={at} states={states} exact={exact} headingId={`${id}-states`} />
         <CardWarnings warnings={card.warnings} headingId={`${id}-warnings`} />
       </div>

@@ -30,6 +30,7 @@ export function Axes({
   control,
   observed,
   flat,
+  swings,
   lowest,
   runningX,
 }: {
@@ -37,6 +38,8 @@ export function Axes({
   control: Quantity
   observed: Quantity
   flat: boolean
+  /** An oscillation is drawn as well. */
+  swings: boolean
   /** Pixel of the lowest curve: an amplitude has no numbers below zero. */
   lowest: number
   runningX: number | null
@@ -45,7 +48,7 @@ export function Axes({
   const yTicks = flat ? y.ticks.filter((tick) => tick.at <= lowest + 1) : y.ticks
   const inPlot = (at: number) => at >= plot.left - 0.5 && at <= plot.right + 0.5
   const before = flat ? 'amplitude of ' : ''
-  const after = flat || small ? '' : ': steady state, and highest and lowest in a swing'
+  const after = flat || small ? '' : swings ? ': steady state, and highest and lowest in a swing' : ': steady state'
   return (
     <g aria-hidden>
       {yTicks.map((tick) => (

@@ -127,12 +127,27 @@ export function Drawing(props: DrawingProps) {
           control={subject.control}
           observed={subject.observed}
           flat={geometry.flat}
+          swings={geometry.near.length > 0}
           lowest={lowest}
           runningX={frame.x.toPixel(at)}
         />
         <g className={older ? 'card-older' : undefined}>
           <StaticLayers scene={scene} card={card} earlierLabel={earlier?.label ?? null} lit={lit} onLit={onLit} />
         </g>
+        {geometry.pieces.length === 0 && (
+          <text
+            x={(frame.plot.left + frame.plot.right) / 2}
+            y={(frame.plot.top + frame.plot.bottom) / 2}
+            textAnchor="middle"
+            fontSize="15"
+            fill="var(--color-ink-2)"
+            paintOrder="stroke"
+            stroke="var(--color-sheet)"
+            strokeWidth="6"
+          >
+            no steady state anywhere in the range
+          </text>
+        )}
         <RunningMarker frame={frame} geometry={geometry} states={states} at={at} onAt={onAt} />
       </svg>
     </figure>

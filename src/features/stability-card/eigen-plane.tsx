@@ -151,6 +151,7 @@ export function EigenPlane(props: EigenPlaneProps) {
     return eigenSceneOf(pieces, branch, own, omegas, subject.control, width)
   }, [card, branch, events, pieces, subject, width])
   if (!scene) return <p className="text-note text-ink-2">No eigenvalues along this branch.</p>
+  const count = pieces.find((piece) => piece.branch === branch)?.points[0]?.eigenvalues.length ?? 0
   const rate = axisUnit(rateUnit(subject), scene.x)
   const rotation = axisUnit(subject.timeUnit ? `rad/${subject.timeUnit}` : 'rad/time', scene.y)
   return (
@@ -196,8 +197,8 @@ export function EigenPlane(props: EigenPlaneProps) {
       </svg>
       <figcaption className="text-label text-ink-2">
         Arrows: {nameOf(subject.control)} rising. Filled: running point.
-        {scene.leftOut &&
-          ` ${scene.leftOut.count} further left, from growth rate ${figure(scene.leftOut.nearest)}: see the table.`}
+        {scene.beyond &&
+          ` ${scene.beyond.count} of ${count} ${scene.beyond.count === 1 ? 'leaves' : 'leave'} the frame; growth rates from ${figure(scene.beyond.from)} to ${figure(scene.beyond.to)}: see the table.`}
       </figcaption>
     </figure>
   )

@@ -2,6 +2,7 @@ import { type KeyboardEvent, useRef } from 'react'
 import { ModelSymbol } from '#src/components/symbol.tsx'
 import { classes } from '#src/lib/class-names.ts'
 import { EventShape, eventWords } from './drawing-marks.tsx'
+import { FigureText } from './figure-text.tsx'
 import { type CardEvent, roleWord } from './geometry/events.ts'
 import { controlFigure } from './geometry/figures.ts'
 import { distanceWords, nearestLimit } from './geometry/running.ts'
@@ -64,12 +65,16 @@ export function PointList({ events, subject, at, lit, onLit, headingId }: PointL
         <svg width="24" height="18" viewBox="-12 -10 24 20" aria-hidden className="self-center">
           <EventShape event={event} />
         </svg>
-        <span className="figures text-note">{event.text}</span>
+        <span className="figures text-note">
+          <FigureText text={event.text} />
+        </span>
         <span className="font-[620]">{event.name}</span>
         <span className={classes('text-note', event.role === 'limit' ? 'font-[620]' : 'text-ink-2')}>
-          {roleWord(event)}
+          {event.role === 'other' ? '' : roleWord(event)}
         </span>
-        <span className="col-span-2 col-start-3 text-label text-ink-2">{event.detail}</span>
+        <span className="col-span-2 col-start-3 text-label text-ink-2">
+          {event.role === 'other' ? `${event.detail}; ${roleWord(event)}` : event.detail}
+        </span>
       </button>
     </li>
   )

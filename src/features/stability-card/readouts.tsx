@@ -1,4 +1,5 @@
 import { classes } from '#src/lib/class-names.ts'
+import { FigureText } from './figure-text.tsx'
 import type { Readout } from './geometry/readouts.ts'
 
 /** The numbers for copying: a ruled strip beside or under the drawing, rows where there is no width. */
@@ -21,7 +22,7 @@ export function Readouts({
         'grid gap-px border-y-[1.5px] border-ink bg-rule @min-[560px]:border-[1.5px]',
         readouts.length > 1 && '@min-[560px]:grid-cols-3',
         readouts.length > 1 && wide && '@min-[1180px]:grid-cols-6',
-        older && 'card-older',
+        older && 'card-older-words',
       )}
     >
       {readouts.map((readout) => (
@@ -40,11 +41,13 @@ export function Readouts({
                 readout.changed ? 'font-[680]' : 'font-[420]',
               )}
             >
-              {readout.figure}
+              <FigureText text={readout.figure} />
             </span>{' '}
             {readout.unit && <span className="text-note whitespace-nowrap">{readout.unit}</span>}
           </dd>
-          <dd className="col-span-full text-label text-ink-2">{readout.note}</dd>
+          <dd className="col-span-full text-label text-ink-2">
+            <FigureText text={readout.note} />
+          </dd>
         </div>
       ))}
     </dl>

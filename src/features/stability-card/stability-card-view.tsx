@@ -119,14 +119,17 @@ function Shown(props: StabilityCardViewProps & { document: PageDocument; card: S
         older={older}
         exact={props.exact ?? null}
         acts={
-          at !== own && (
-            <span className="flex flex-wrap gap-2">
-              <Button look="quiet" onClick={() => props.onAt(null)}>
-                Back to the page's value
-              </Button>
-              {mayEdit && onSetValue && <Button onClick={() => onSetValue(at)}>Set as the page's value</Button>}
-            </span>
-          )
+          // Always as high, so that nothing below moves when the running point does.
+          <div className="flex min-h-11 flex-wrap items-center gap-2 bench:min-h-8">
+            {at === own ? (
+              <span className="text-note text-ink-2">Running at the page's own value.</span>
+            ) : (
+              <>
+                <Button onClick={() => props.onAt(null)}>Back to the page's value</Button>
+                {mayEdit && onSetValue && <Button onClick={() => onSetValue(at)}>Set as the page's value</Button>}
+              </>
+            )}
+          </div>
         }
       />
     </>

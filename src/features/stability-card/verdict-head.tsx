@@ -62,7 +62,7 @@ export function VerdictHead({ card, words, earlier, note, older, headingId, sent
   const noteId = useId()
   return (
     <header className="grid gap-x-4 gap-y-2 @min-[760px]:grid-cols-[1fr_auto]">
-      <div className={classes('flex items-start gap-4', older && 'card-older')}>
+      <div className={classes('flex items-start gap-4', older && 'card-older-words')}>
         <span className="mt-0.5 flex shrink-0 gap-2">
           {glyphsOf(card, words.glyph).map((glyph) => (
             <OnsetGlyph key={glyph} kind={glyph} size={48} faded={older} />

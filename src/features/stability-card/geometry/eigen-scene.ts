@@ -26,12 +26,11 @@ export interface EigenScene {
   /** Where a path ends for a rising control, with its direction. */
   arrows: { at: Point; angle: number }[]
   crossings: { event: CardEvent; at: Point }[]
-  /** Eigenvalues that lie so far to the left that they are not drawn, and the nearest growth rate among them. */
-  leftOut: { count: number; nearest: number } | null
+  /** Eigenvalues that leave the frame somewhere along the sweep, and the growth rates all of them cover. */
+  beyond: { count: number; from: number; to: number } | null
 }
 
 const stepsShown = 8
-const mostLeft = 2.5
 
 /** Points of one branch from end to end, with the control rising on the whole. */
 export function pointsOf(pieces: readonly Piece[], branch: number): CurvePoint[] {
@@ -40,36 +39,59 @@ export function pointsOf(pieces: readonly Piece[], branch: number): CurvePoint[]
   return rising ? points : points.reverse()
 }
 
-/**
- * Which eigenvalues fit one picture: all whose rightmost place is not more than two and a half times as far left as the span of
- * those that come near the wall. A fast mode a hundred times further left would press all others into one line.
- */
-function chosen(points: readonly CurvePoint[]): { shown: number[]; leftOut: EigenScene['leftOut'] } {
+/** Positions of the eigenvalues that cross the wall at an onset of this branch; without one, that of the rightmost. */
+function inFocus(points: readonly CurvePoint[], onsets: readonly { p: number; omega: number }[]): number[] {
   const count = points[0]?.eigenvalues.length ?? 0
-  const reach = Array.from({ length: count }, (_, k) => {
-    const res = points.map((point) => point.eigenvalues[k]?.re ?? 0)
-    return {
-      k,
-      right: res.reduce((a, b) => Math.max(a, b), Number.NEGATIVE_INFINITY),
-      left: res.reduce((a, b) => Math.min(a, b), Number.POSITIVE_INFINITY),
+  const all = Array.from({ length: count }, (_, k) => k)
+  const crossing = onsets.flatMap(({ p, omega }) => {
+    const gap = (k: number) => {
+      const place = placeAt(points, k, p)
+      return place ? Math.hypot(place.re, Math.abs(place.im) - omega) : Number.POSITIVE_INFINITY
     }
-  }).sort((a, b) => b.right - a.right || a.k - b.k)
-  const first = reach[0]
-  if (!first) return { shown: [], leftOut: null }
-  let left = Math.min(first.left, 0)
-  let right = Math.max(first.right, 0)
-  const shown: number[] = []
-  const out: number[] = []
-  for (const one of reach) {
-    const span = Math.max(right - left, 1e-12)
-    if (one === first || Math.abs(one.right) <= mostLeft * span) {
-      shown.push(one.k)
-      left = Math.min(left, Math.max(one.left, -mostLeft * span))
-      right = Math.max(right, one.right)
-    } else out.push(one.right)
+    return [...all].sort((x, y) => gap(x) - gap(y)).slice(0, 2)
+  })
+  if (crossing.length > 0) return [...new Set(crossing)]
+  const right = (k: number) =>
+    points.reduce((most, point) => Math.max(most, point.eigenvalues[k]?.re ?? most), Number.NEGATIVE_INFINITY)
+  return all.sort((x, y) => right(y) - right(x)).slice(0, 1)
+}
+
+function extentOf(points: readonly CurvePoint[], ks: readonly number[]) {
+  const values = points.flatMap((point) => ks.flatMap((k) => point.eigenvalues[k] ?? []))
+  return {
+    low: values.reduce((a, b) => Math.min(a, b.re), 0),
+    high: values.reduce((a, b) => Math.max(a, b.re), 0),
+    turn: values.reduce((a, b) => Math.max(a, Math.abs(b.im)), 0),
   }
-  const nearest = out.reduce((a, b) => Math.max(a, b), Number.NEGATIVE_INFINITY)
-  return { shown, leftOut: out.length > 0 ? { count: out.length, nearest } : null }
+}
+
+/** How far beyond the crossing pairs the frame may reach for others, in spans of theirs. */
+const reachForOthers = 0.8
+
+/**
+ * The frame of growth rates: the pairs that cross, and as much of the others as does not press those into a line. A mode a
+ * hundred times faster runs out of the frame; how many do, and how far, is told under the picture.
+ */
+function framed(points: readonly CurvePoint[], onsets: readonly { p: number; omega: number }[]) {
+  const focus = extentOf(points, inFocus(points, onsets))
+  const all = extentOf(points, points[0]?.eigenvalues.map((_, k) => k) ?? [])
+  const span = focus.high - focus.low || all.high - all.low || 1
+  const low = Math.max(all.low, focus.low - reachForOthers * span)
+  const high = Math.min(all.high, focus.high + reachForOthers * span)
+  const turn = focus.turn > 0 ? Math.min(all.turn, (1 + reachForOthers) * focus.turn) : all.turn
+  const out = (points[0]?.eigenvalues ?? []).filter((_, k) =>
+    points.some((point) => {
+      const { re, im } = point.eigenvalues[k] ?? { re: 0, im: 0 }
+      return re < low || re > high || Math.abs(im) > turn
+    }),
+  ).length
+  return {
+    low,
+    high,
+    span: high - low || 1,
+    turn,
+    beyond: out > 0 ? { count: out, from: all.low, to: all.high } : null,
+  }
 }
 
 /** Where the control has gone `share` of the way through the range. */
@@ -125,24 +147,24 @@ export function eigenSceneOf(
   width: number,
 ): EigenScene | null {
   const points = pointsOf(pieces, branch)
-  const { shown, leftOut } = chosen(points)
-  if (shown.length === 0) return null
-  const values = points.flatMap((point) => shown.flatMap((k) => point.eigenvalues[k] ?? []))
-  const lowRe = values.reduce((a, b) => Math.min(a, b.re), 0)
-  const highRe = values.reduce((a, b) => Math.max(a, b.re), 0)
-  const highIm = values.reduce((a, b) => Math.max(a, Math.abs(b.im)), 0)
-  const span = highRe - lowRe || 1
-  const reach = highIm > 0 ? highIm * 1.22 : span
+  const count = points[0]?.eigenvalues.length ?? 0
+  if (count === 0) return null
+  const shown = Array.from({ length: count }, (_, k) => k)
+  const own = events.filter((event) => event.kind === 'onset')
+  const onsets = own.flatMap((event) => {
+    const omega = omegas.get(event.id)
+    return omega === undefined ? [] : [{ event, p: event.p, omega }]
+  })
+  const { low, high, span, turn, beyond } = framed(points, onsets)
+  const reach = turn > 0 ? turn * 1.22 : span
   const height = Math.round(Math.max(190, Math.min(330, width * 0.78)))
   const plot = { left: 44, right: width - 10, top: 34, bottom: height - 40 }
-  const x = axisBetween(lowRe - 0.12 * span, highRe + 0.16 * span, plot.left, plot.right, 4)
+  const x = axisBetween(low - 0.1 * span, high + 0.14 * span, plot.left, plot.right, 4)
   const y = axisBetween(-reach, reach, plot.bottom, plot.top, 5)
   const at = ({ re, im }: { re: number; im: number }): Point => ({ x: x.toPixel(re), y: y.toPixel(im) })
-  const own = events.filter((event) => event.kind === 'onset')
-  const crossings = own.flatMap((event) => {
-    const omega = omegas.get(event.id)
-    return omega === undefined ? [] : [1, -1].map((sign) => ({ event, at: at({ re: 0, im: sign * omega }) }))
-  })
+  const crossings = onsets.flatMap(({ event, omega }) =>
+    [1, -1].map((sign) => ({ event, at: at({ re: 0, im: sign * omega }) })),
+  )
   const lookNear = (place: Point | undefined): CardEvent['look'] => {
     const near = crossings
       .map((crossing) => ({
@@ -177,5 +199,19 @@ export function eigenSceneOf(
     const before = [...line].reverse().find((place) => end && Math.hypot(place.x - end.x, place.y - end.y) > 4)
     return end && before ? [{ at: end, angle: (Math.atan2(end.y - before.y, end.x - before.x) * 180) / Math.PI }] : []
   })
-  return { width, height, plot, x, y, wall: x.toPixel(0), paths, dots: distinct, arrows, crossings, leftOut }
+  const crowded = (dot: Point) =>
+    [...crossings, ...arrows].some(({ at: place }) => Math.hypot(place.x - dot.x, place.y - dot.y) < 8)
+  return {
+    width,
+    height,
+    plot,
+    x,
+    y,
+    wall: x.toPixel(0),
+    paths,
+    dots: distinct.filter((dot) => !crowded(dot)),
+    arrows,
+    crossings,
+    beyond,
+  }
 }

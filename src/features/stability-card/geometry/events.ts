@@ -29,6 +29,8 @@ export interface CardEvent {
   name: string
   /** What is known of it, in a few words. */
   detail: string
+  /** The same for the drawing, where room is dear. */
+  brief: string
 }
 
 export const lookOf = (verdict: Verdict): OnsetLook =>
@@ -99,6 +101,7 @@ export function eventsOf(card: StabilityCard, subject: Subject, pieces: readonly
       text: controlFigure(point.p, subject, safeSide(point)),
       name: onsetName(look, point.operating),
       detail: onsetDetail(point, subject),
+      brief: point.operating ? frequencyFigure(point.omega, subject) : 'already unstable, not a limit',
     })
   })
   card.folds?.forEach((fold, index) => {
@@ -117,6 +120,7 @@ export function eventsOf(card: StabilityCard, subject: Subject, pieces: readonly
       text: controlFigure(fold.p, subject, sideOf(card, 'fold', index)),
       name: 'Turning point',
       detail: ends ? 'a stable steady state ends' : 'two unstable steady states end',
+      brief: ends ? 'a stable steady state ends' : 'two unstable steady states end',
     })
   })
   card.branchPoints?.forEach((point, index) => {
@@ -134,6 +138,7 @@ export function eventsOf(card: StabilityCard, subject: Subject, pieces: readonly
       text: controlFigure(point.p, subject, sideOf(card, 'branch-point', index)),
       name: 'Branch point',
       detail: forkWords[point.kind],
+      brief: forkWords[point.kind],
     })
   })
   return events.sort((a, b) => a.p - b.p || a.value - b.value)

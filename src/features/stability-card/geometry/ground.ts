@@ -10,8 +10,10 @@ import {
   segmentsOf,
 } from './points.ts'
 
-/** What ends the ground on one side: a hard onset's lip, a soft one's ramp, a cut face where the
- * steady state itself ends, a seam where another takes over, or the edge of what was swept. */
+/**
+ * What ends the ground on one side: a hard onset's lip, a soft one's ramp, a taper where the steady state itself ends or
+ * another takes over, or the edge of what was swept.
+ */
 export type GroundEnd =
   | {
       kind: 'hard' /** pixel position of the recovery along the control; null where it is not computed */
@@ -19,8 +21,7 @@ export type GroundEnd =
     }
   | { kind: 'soft' }
   | { kind: 'undecided' }
-  | { kind: 'cliff' }
-  | { kind: 'seam' }
+  | { kind: 'taper' }
   | { kind: 'none' }
 
 /** Heavy outlines of the ground; `dashed` where the place of a face is not computed. */
@@ -38,6 +39,7 @@ export interface GroundShape {
 }
 
 export const lipDepth = 12
+const taperSlope = 0.8
 const rampOut = 24
 const rampDeeper = 10
 /** How far back the undercut is drawn where the recovery is not known yet. */
@@ -123,6 +125,11 @@ function setDepths(stations: Station[], full: number, obstacles: readonly Segmen
   for (let i = stations.length - 1; i > 0; i--) relax(stations[i], stations[i - 1])
 }
 
+/** The strip thins out to nothing towards an end. */
+function taper(stations: readonly Station[], fromEnd: (station: Station) => number): void {
+  for (const station of stations) station.depth = Math.min(station.depth, taperSlope * fromEnd(station))
+}
+
 const foot = (station: Station, depth = station.depth) => moved(station.at, station.normal, depth)
 
 function stationAt(stations: readonly Station[], s: number): Station | null {
@@ -173,6 +180,8 @@ export function groundUnder(
   const last = stations.at(-1)
   if (!first || !last || last.s < 6) return null
   setDepths(stations, depth, obstacles, plot)
+  if (start.kind === 'taper') taper(stations, (station) => station.s)
+  if (end.kind === 'taper') taper(stations, (station) => last.s - station.s)
   const cutStart = undercut(start, stations, false)
   const cutEnd = last.s - undercut(end, stations, true)
   const edges: GroundEdge[] = []
@@ -218,8 +227,6 @@ export function groundUnder(
     [end.kind, last],
   ] as const) {
     if (kind === 'undecided') edge([station.at, foot(station)], 'light', true)
-    if (kind === 'cliff') edge([station.at, foot(station)], 'heavy')
-    if (kind === 'seam') edge([station.at, foot(station)], 'light')
   }
   const top = stations.map((station) => station.at)
   return { hatch: pathThrough([...top, ...bottom.reverse()], true), edges, outline }

@@ -1,6 +1,6 @@
 import type { CardEvent } from './events.ts'
 import { type LabelRequest, type PlacedLabel, placeLabels } from './place-labels.ts'
-import { type Box, boxAround, type Point } from './points.ts'
+import { type Box, boxAround, distance, type Point } from './points.ts'
 import type { Scene, SceneNear } from './scene.ts'
 import type { WindowLine } from './window-line.ts'
 
@@ -64,12 +64,17 @@ function dimensions({ frame: { plot } }: Scene, window: WindowLine): Box[] {
  * the axis.
  */
 export function labelsOf(scene: Scene, window: WindowLine | null, previous: readonly PlacedLabel[] = []): DrawnLabel[] {
-  const marks = inOrder(scene).map(({ event, at }) => ({
+  // One spot may carry several events (states that do not differ in the observed quantity): equal words stand there once.
+  const told = inOrder(scene).filter(
+    ({ event, at }, i, all) =>
+      all.findIndex((other) => other.event.name === event.name && distance(other.at, at) < 4) === i,
+  )
+  const marks = told.map(({ event, at }) => ({
     id: event.id,
     at,
     radius: markRadius,
     title: `${lowerFirst(event.name)} ${event.text}`,
-    detail: event.detail,
+    detail: event.brief,
     short: event.text,
     hue: hueOf(event),
   }))

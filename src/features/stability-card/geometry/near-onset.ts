@@ -20,12 +20,18 @@ export interface NearOnset {
 
 const steps = 24
 
-function predicted(at: HopfPoint, index: number, pieces: readonly Piece[], range: Range): NearOnset | null {
+function predicted(
+  at: HopfPoint,
+  index: number,
+  pieces: readonly Piece[],
+  range: Range,
+  observed: string,
+): NearOnset | null {
   const { amplitudeCoefficient: coefficient, cycleSide: side, operating, verdict } = at
   if (!operating || coefficient === null || side === null || coefficient <= 0) return null
   const sign = side === 'above' ? 1 : -1
   const own = pieces.filter((piece) => piece.branch === at.branch).flatMap((piece) => piece.points)
-  const run = runFrom(own, at, sign)
+  const run = runFrom(own, at, sign, observed)
   const end = run.at(-1)
   if (!end) return null
   const farthest = Math.min(
@@ -48,7 +54,7 @@ const gapTo = (at: HopfPoint, point: CurvePoint): number =>
   Object.entries(at.state).reduce((sum, [symbol, value]) => sum + Math.abs(value - (point.state[symbol] ?? value)), 0)
 
 /** The branch from the onset on, in the direction in which the control moves to the cycle's side, as far as it keeps moving. */
-function runFrom(own: readonly CurvePoint[], at: HopfPoint, sign: 1 | -1): CurvePoint[] {
+function runFrom(own: readonly CurvePoint[], at: HopfPoint, sign: 1 | -1, observed: string): CurvePoint[] {
   const start = own
     .map((point, i) => ({ i, away: Math.abs(point.p - at.p), gap: gapTo(at, point) }))
     .sort((a, b) => a.away - b.away || a.gap - b.gap)
@@ -66,7 +72,11 @@ function runFrom(own: readonly CurvePoint[], at: HopfPoint, sign: 1 | -1): Curve
     return run
   }
   const [up, down] = [follow(1), follow(-1)]
-  return up.length >= down.length ? up : down
+  const run = up.length >= down.length ? up : down
+  const nearest = own[start]
+  if (!nearest) return []
+  const first = { ...nearest, p: at.p, state: at.state, value: at.state[observed] ?? nearest.value }
+  return [first, ...run.filter((point) => sign * (point.p - at.p) > 0)]
 }
 
 /** The observed value of a run at control value `p`. */
@@ -90,5 +100,5 @@ interface Range {
 
 /** The near-onset predictions of a card, one for each onset where a steady state is lost and the kind is decided. */
 export function nearOnsets(card: StabilityCard, pieces: readonly Piece[], range: Range): NearOnset[] {
-  return (card.hopf ?? []).flatMap((at, index) => predicted(at, index, pieces, range) ?? [])
+  return (card.hopf ?? []).flatMap((at, index) => predicted(at, index, pieces, range, card.observed) ?? [])
 }

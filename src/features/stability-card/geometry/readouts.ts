@@ -1,6 +1,6 @@
 import type { HopfPoint } from '#shared/model/card-document.ts'
 import { formatNumber } from '#shared/stability/numbers.ts'
-import { lookOf } from './events.ts'
+import { type CardEvent, lookOf } from './events.ts'
 import {
   angularFigure,
   controlFigure,
@@ -79,6 +79,23 @@ export function onsetReadouts(point: HopfPoint, before: HopfPoint | null, at: nu
     ),
     readout('Cubic coefficient', point.cubic === null ? '' : cubicUnit(subject), cubicNote(point), cubicFigure),
     readout('Crossing rate', crossingUnit(subject), 'of the growth rate', (of) => signedFigure(of.crossing)),
+  ]
+}
+
+/** The numbers of a limit that is no onset: a turning point, a branch point. */
+export function limitReadouts(limit: CardEvent, at: number, subject: Subject): Readout[] {
+  const { unit } = subject.control
+  const size = gapFigure(Math.abs(limit.p - at), limit.text, subject)
+  const side = limit.p > at ? 'it lies above' : 'it lies below'
+  return [
+    { label: limit.name, figure: limit.text, unit, note: limit.detail, changed: false },
+    {
+      label: `From running to ${limit.name.toLowerCase()}`,
+      figure: size ?? '0',
+      unit,
+      note: size === null ? 'running at it' : side,
+      changed: false,
+    },
   ]
 }
 

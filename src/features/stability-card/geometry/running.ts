@@ -100,5 +100,8 @@ export function runningWords(
           ? 'a stable steady state'
           : `${stable} stable steady states`
   const limit = nearestLimit(at, events)
-  return [value, standing, ...(limit ? [distanceWords(at, limit, subject)] : [])].join(', ')
+  if (!limit) return `${value}, ${standing}`
+  const distance = distanceWords(at, limit, subject)
+  // On the limit itself rounding decides what is called stable: it is not said.
+  return distance.startsWith('on ') ? `${value}, ${distance}` : `${value}, ${standing}, ${distance}`
 }

@@ -5,7 +5,8 @@ import { type Extent, type Frame, frameFor } from './frame.ts'
 import { type GroundEnd, type GroundShape, groundUnder } from './ground.ts'
 import { type NearOnset, nearOnsets } from './near-onset.ts'
 import { type CurvePoint, type Piece, type PieceEnd, piecesOf } from './pieces.ts'
-import { type Point, pathThrough, type Segment, segmentsOf } from './points.ts'
+import { distance, type Point, pathThrough, type Segment, segmentsOf } from './points.ts'
+import { evenly } from './resample.ts'
 import { type Subject, subjectOf } from './subject.ts'
 
 /** A card read for drawing: numbers in the model's units, nothing placed yet. */
@@ -84,8 +85,7 @@ function extentOf(geometries: readonly CardGeometry[], flat: boolean): Extent {
 }
 
 function endFor(end: PieceEnd, card: StabilityCard, frame: Frame): GroundEnd {
-  if (end.kind === 'turning-point') return { kind: 'cliff' }
-  if (end.kind === 'branch-point') return { kind: 'seam' }
+  if (end.kind === 'turning-point' || end.kind === 'branch-point') return { kind: 'taper' }
   if (end.kind !== 'onset' || end.index === null) return { kind: 'none' }
   const verdict = card.hopf?.[end.index]?.verdict
   if (verdict === 'soft') return { kind: 'soft' }
@@ -129,6 +129,23 @@ function placed(geometry: CardGeometry, frame: Frame, flat: boolean) {
   return { at, curves, near }
 }
 
+const sameLine = (a: SceneCurve, b: SceneCurve): boolean => {
+  const [one, other] = [evenly(a.points, 9), evenly(b.points, 9)]
+  const near = (to: readonly Point[]) => one.every((point, i) => to[i] && distance(point, to[i]) < 3)
+  return near(other) || near([...other].reverse())
+}
+
+/** True where another ground lies under the same line already; the running one is laid before all others. */
+function covered(
+  curve: SceneCurve,
+  main: boolean,
+  before: readonly SceneCurve[],
+  mainCurve: SceneCurve | undefined,
+): boolean {
+  if (main) return false
+  return (mainCurve !== undefined && sameLine(curve, mainCurve)) || before.some((other) => sameLine(curve, other))
+}
+
 /** Points nearer than half a pixel to the one before add nothing. The ends always stay. */
 function thinned(points: Point[]): Point[] {
   const kept: Point[] = []
@@ -151,18 +168,25 @@ export function sceneOf(
   const flat = geometry.flat && (earlier?.flat ?? true)
   const frame = frameFor(width, subject.control, extentOf(earlier ? [geometry, earlier] : [geometry], flat))
   const { at, curves, near } = placed(geometry, frame, flat)
-  const solid = curves.filter((curve) => curve.stable)
   const running = windowPiece(geometry.pieces, card)
+  const mainCurve = running ? curves[geometry.pieces.indexOf(running)] : undefined
+  const solid = curves.filter((curve) => curve.stable)
   const grounds = geometry.pieces.flatMap((piece, i) => {
     const curve = curves[i]
     if (!piece.stable || !curve) return []
     const main = piece === running
+    // Two states that do not differ in the observed quantity are one line: it needs one ground.
+    if (covered(curve, main, solid.slice(0, solid.indexOf(curve)), mainCurve)) return []
     const obstacles = solid.flatMap((other) => (other === curve ? [] : segmentsOf(other.points)))
     const ends = [endFor(piece.start, card, frame), endFor(piece.end, card, frame)] as const
     const shape = groundUnder(curve.points, main ? frame.depth : frame.otherDepth, ...ends, obstacles, frame.plot)
     return shape ? [{ ...shape, key: curve.id, main }] : []
   })
-  const marks = geometry.events.map((event) => ({ event, at: at(event) }))
+  // On one spot the limit lies on top.
+  const weight = { none: 0, other: 1, limit: 2 } as const
+  const marks = geometry.events
+    .map((event) => ({ event, at: at(event) }))
+    .sort((a, b) => a.at.x - b.at.x || a.at.y - b.at.y || weight[a.event.role] - weight[b.event.role])
   const lines = [
     ...curves.flatMap((curve) => segmentsOf(curve.points)),
     ...near.flatMap((curve) => curve.lines.flatMap(segmentsOf)),
