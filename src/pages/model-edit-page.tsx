@@ -51,7 +51,7 @@ function Editing({ page, connection, onReload }: { page: Page; connection: Draft
   const earlier = useInForce(page)
   const title = content.settings.title || page.title
   return (
-    <main className="mx-auto grid w-full max-w-[1920px] content-start gap-3 px-6 py-4 max-tablet:px-4">
+    <main className="mx-auto grid w-full grid-cols-1 max-w-[1920px] content-start gap-3 px-6 py-4 max-tablet:px-4">
       <title>{`${title} (draft) · ${page.code} · Brinkbook`}</title>
       <ModelHead
         page={page}
@@ -70,7 +70,7 @@ function Editing({ page, connection, onReload }: { page: Page; connection: Draft
       />
       <DraftBand connection={connection} onReload={onReload} />
       {!state.synced && state.phase !== 'refused' && <PencilLine label="Opening the draft" />}
-      <div className="grid items-start gap-4 bench:grid-cols-[minmax(0,432px)_minmax(0,1fr)] wide:grid-cols-[480px_minmax(0,1fr)]">
+      <div className="grid grid-cols-1 items-start gap-4 bench:grid-cols-[minmax(0,432px)_minmax(0,1fr)] wide:grid-cols-[480px_minmax(0,1fr)]">
         <DraftModelColumn connection={connection} live={live} readOnly={readOnly} earlier={earlier} />
         <DraftCardColumn connection={connection} live={live} mayEdit={!readOnly} earlier={earlier} />
       </div>

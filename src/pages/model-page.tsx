@@ -41,7 +41,7 @@ function ReadView({ page, section }: { page: Page; section: PageSection }) {
   if (!shown && member && (section === 'behaviour' || section === 'model'))
     return <Navigate to={`/m/${page.code}/edit`} replace />
   return (
-    <main className="mx-auto grid w-full max-w-[1440px] content-start gap-3 px-6 py-4 max-tablet:px-4">
+    <main className="mx-auto grid w-full grid-cols-1 max-w-[1440px] content-start gap-3 px-6 py-4 max-tablet:px-4">
       <title>{`${page.title} · ${page.code} · Brinkbook`}</title>
       <ModelHead
         page={page}
@@ -142,7 +142,7 @@ function Shown({ page, mark, section }: { page: Page; mark: string; section: 'mo
   }
   if (section === 'model') return <ModelSheet document={document} lines={revision.lines} sources={revision.sources} />
   return (
-    <div className="grid gap-4 wide:grid-cols-[1fr_368px]">
+    <div className="grid grid-cols-1 gap-4 wide:grid-cols-[minmax(0,1fr)_368px]">
       <StabilityCardView document={document} card={revision.stabilityCard} state="stored" at={at} onAt={setAt} />
       <aside
         className="sheet grid content-start gap-6 p-5 bench:max-wide:grid-cols-2"

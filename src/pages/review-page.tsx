@@ -64,7 +64,7 @@ function Review({ page, revision, inForce }: { page: Page; revision: Revision; i
   const mayTakeBack = open && me?.id === revision.sentBy.id && page.may.includes('revision:take-back')
   const whyNot = row ? row.whyNot : 'Only a maintainer who did not write in it can approve.'
   return (
-    <main className="mx-auto grid w-full max-w-[1440px] content-start gap-4 px-6 py-4 max-tablet:px-4">
+    <main className="mx-auto grid w-full grid-cols-1 max-w-[1440px] content-start gap-4 px-6 py-4 max-tablet:px-4">
       <title>{`Review of ${page.code} ${revision.mark} · Brinkbook`}</title>
       <ModelHead
         page={page}
@@ -77,8 +77,8 @@ function Review({ page, revision, inForce }: { page: Page; revision: Revision; i
       {!open && <StateBand revision={revision} inForce={page.inForce?.mark ?? null} code={page.code} />}
       {open && <ConsequenceHead comparison={comparison} verb="Approving this" />}
       {document && (
-        <div className="grid items-start gap-4 bench:grid-cols-[minmax(0,27rem)_minmax(0,1fr)_20rem]">
-          <div className="grid content-start gap-4">
+        <div className="grid grid-cols-1 items-start gap-4 bench:grid-cols-[minmax(0,27rem)_minmax(0,1fr)_20rem]">
+          <div className="grid min-w-0 content-start gap-4">
             <ComparedEquations before={before} after={document} />
             <ComparedTables before={before} after={document} />
             <section aria-labelledby="review-sources" className="sheet p-4">
@@ -105,7 +105,7 @@ function Review({ page, revision, inForce }: { page: Page; revision: Revision; i
               </section>
             )}
           </div>
-          <div className="grid content-start gap-4">
+          <div className="grid min-w-0 content-start gap-4">
             <RemarkList remarks={revision.remarks} />
             {open && (
               <>

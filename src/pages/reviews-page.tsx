@@ -12,7 +12,7 @@ export function ReviewsPage() {
   if (reviews.isError) return <ReadFault error={reviews.error} what="reviews" onAgain={() => reviews.refetch()} />
   const { toCheck, sentByMe, settled } = reviews.data
   return (
-    <main className="mx-auto grid w-full max-w-[1120px] content-start gap-4 px-6 py-5 max-tablet:px-4">
+    <main className="mx-auto grid w-full grid-cols-1 max-w-[1120px] content-start gap-4 px-6 py-5 max-tablet:px-4">
       <title>Reviews · Brinkbook</title>
       <h1 className="text-title">Reviews</h1>
       <ReviewList

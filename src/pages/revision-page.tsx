@@ -59,7 +59,7 @@ function RevisionView({ page, revision, other }: { page: Page; revision: Revisio
       : null
   const mayTakeBack = revision.state === 'in-review' && page.may.includes('revision:take-back')
   return (
-    <main className="mx-auto grid w-full max-w-[1440px] content-start gap-3 px-6 py-4 max-tablet:px-4">
+    <main className="mx-auto grid w-full grid-cols-1 max-w-[1440px] content-start gap-3 px-6 py-4 max-tablet:px-4">
       <title>{`${page.code} revision ${revision.mark}${other ? ` against ${other.mark}` : ''} · Brinkbook`}</title>
       <ModelHead
         page={page}
@@ -81,7 +81,7 @@ function RevisionView({ page, revision, other }: { page: Page; revision: Revisio
       <StateBand revision={revision} inForce={page.inForce?.mark ?? null} code={page.code} />
       {other && comparison && <ConsequenceHead comparison={comparison} verb={`Revision ${revision.mark}`} />}
       {document && other && comparison && (
-        <div className="grid items-start gap-4 bench:grid-cols-2">
+        <div className="grid grid-cols-1 items-start gap-4 bench:grid-cols-2">
           <ComparedEquations before={earlierDocument} after={document} />
           <section aria-labelledby="verdict-differences" className="sheet pt-4">
             <h2 id="verdict-differences" className="px-4 text-subtitle">

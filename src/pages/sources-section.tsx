@@ -51,7 +51,7 @@ function DraftSources({ page }: { page: Page }) {
   const targets = targetsOf(draft.data?.document)
   const fault = remove.error ?? unlink.error
   return (
-    <div className="grid items-start gap-4 bench:grid-cols-[1fr_26rem]">
+    <div className="grid grid-cols-1 items-start gap-4 bench:grid-cols-[minmax(0,1fr)_26rem]">
       <section aria-labelledby="sources-heading" className="sheet p-5">
         <h2 id="sources-heading" className="text-subtitle">
           Sources of the draft

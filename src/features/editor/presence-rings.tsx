@@ -1,10 +1,11 @@
+import { useMe } from '#src/api/session.ts'
 import { InitialsRing } from '#src/components/initials-ring.tsx'
 import type { DraftConnection } from './draft-connection.ts'
 import { usePresence } from './use-draft-connection.ts'
 
 /** Everybody who has the draft open, as initials in rings; names for screen readers and on the pointer. */
 export function PresenceRings({ connection }: { connection: DraftConnection }) {
-  const people = usePresence(connection)
+  const people = usePresence(connection, useMe())
   if (people.length === 0) return null
   const words = people.map((person) => (person.own ? `${person.name} (you)` : person.name)).join(', ')
   return (

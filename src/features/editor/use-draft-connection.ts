@@ -37,8 +37,8 @@ export interface PresentPerson {
   editing: boolean
 }
 
-/** Who is here, by the server's word; one entry a person, however many tabs. */
-export function usePresence(connection: DraftConnection): PresentPerson[] {
+/** Who is here, by the server's word; one entry a person, however many tabs. `me`: the server tells the others of this tab, not this one. */
+export function usePresence(connection: DraftConnection, me: { id: number; name: string } | null): PresentPerson[] {
   const { awareness } = connection
   const last = useRef<PresentPerson[]>([])
   return useSyncExternalStore(
@@ -49,7 +49,7 @@ export function usePresence(connection: DraftConnection): PresentPerson[] {
     () => {
       const people = new Map<number, PresentPerson>()
       for (const [client, state] of awareness.getStates()) {
-        const user: unknown = state.user
+        const user: unknown = client === awareness.clientID ? me : state.user
         if (typeof user !== 'object' || user === null || !('id' in user) || !('name' in user)) continue
         if (typeof user.id !== 'number' || typeof user.name !== 'string') continue
         const before = people.get(user.id)

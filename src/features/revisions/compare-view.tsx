@@ -51,7 +51,7 @@ export function ComparedEquations({ before, after }: { before: ModelDocument | n
     0,
   )
   return (
-    <section aria-labelledby="compared-equations" className="sheet p-4">
+    <section aria-labelledby="compared-equations" className="sheet min-w-0 p-4">
       <header className="flex items-baseline justify-between gap-3">
         <h2 id="compared-equations" className="text-subtitle">
           Equations
@@ -144,7 +144,7 @@ export function ComparedTables({ before, after }: { before: ModelDocument | null
             : [{ symbol: name, meaning: '', was: String(before[key] ?? ''), now: String(after[key] ?? '') }],
         )
   return (
-    <section aria-labelledby="compared-tables" className="sheet p-4">
+    <section aria-labelledby="compared-tables" className="sheet min-w-0 p-4">
       <h2 id="compared-tables" className="text-subtitle">
         Parameters and settings
       </h2>

@@ -33,7 +33,7 @@ export function ModelSheet({
 }) {
   const cited = citedBy(sources)
   return (
-    <div className="grid content-start gap-4 bench:grid-cols-2">
+    <div className="grid grid-cols-1 content-start gap-4 bench:grid-cols-2">
       <section aria-labelledby="sheet-equations" className="sheet p-5">
         <h2 id="sheet-equations" className="mb-3 text-subtitle">
           Equations
@@ -56,7 +56,7 @@ export function ModelSheet({
           </>
         )}
       </section>
-      <div className="grid content-start gap-4">
+      <div className="grid min-w-0 content-start gap-4">
         <section aria-labelledby="sheet-parameters" className="sheet pt-4">
           <h2 id="sheet-parameters" className="px-4 text-subtitle">
             Parameters
