@@ -52,7 +52,7 @@ const rules: { folder: string; own: string[]; packages: string[] | 'any' }[] = [
   { folder: 'src/components', own: ['src/components', 'src/hooks', 'src/lib', 'shared'], packages: 'any' },
   { folder: 'src/hooks', own: ['src/hooks', 'src/lib', 'shared'], packages: 'any' },
   { folder: 'src/lib', own: ['src/lib', 'shared'], packages: 'any' },
-  { folder: 'src/workers', own: ['src/workers', 'shared'], packages: 'any' },
+  { folder: 'src/workers', own: ['src/workers', 'src/lib', 'shared'], packages: 'any' },
   { folder: 'src/api', own: ['src/api', 'src/lib', 'shared'], packages: 'any' },
   { folder: 'src', own: ['src', 'shared'], packages: 'any' },
 ]
