@@ -33,20 +33,28 @@ export async function readFrozen(
     ...head,
     document,
     stabilityCard,
-    lines: linesOf(document),
+    lines: linesOf(row.digest, document),
     sources: await sourcesOf(compute, document),
     remarks: remarks.map((remark) => ({ ...remark, at: remark.at.toISOString() })),
   }
 }
 
-const linesOf = (document: ModelDocument): ShownLine[] =>
-  blockToTex(document).map(({ line, kind, tex, text, comment }) => ({
-    line,
-    kind: kind === 'unread' ? 'comment' : kind,
-    tex,
-    text,
-    ...(comment === null ? {} : { comment }),
-  }))
+/** A frozen document is typeset once; the last ones stay, by what they hold. */
+const typeset = new Map<string, ShownLine[]>()
+const mostTypeset = 200
+
+function linesOf(digest: string, document: ModelDocument): ShownLine[] {
+  const known = typeset.get(digest)
+  if (known) return known
+  const lines = blockToTex(document).map(({ line, kind, tex, text, comment }): ShownLine => {
+    const shown = { line, kind: kind === 'unread' ? 'comment' : kind, tex, text } as const
+    return comment === null ? shown : { ...shown, comment }
+  })
+  const [oldest] = typeset.keys()
+  if (typeset.size >= mostTypeset && oldest !== undefined) typeset.delete(oldest)
+  typeset.set(digest, lines)
+  return lines
+}
 
 const pagePlaces = z.object({
   places: z.array(
