@@ -17,7 +17,7 @@ function run(command, args, options) {
   return new Promise((resolve) => {
     const child = spawn(command, args, options)
     child.once('error', (error) => resolve(internal(`The command could not be started: ${error.message}`)))
-    child.once('exit', (code) => resolve(code ?? 1))
+    child.once('exit', (code) => resolve(code ?? 137))
   })
 }
 
@@ -30,7 +30,9 @@ async function main() {
   }
   const script = path.join(root, 'server/cli/card.ts')
   const args = ['--import', pathToFileURL(loader).href, script, ...process.argv.slice(2)]
-  return run(process.execPath, args, { stdio: 'inherit' })
+  const code = await run(process.execPath, args, { stdio: 'inherit' })
+  // the script itself ends with 0, 1 or 2; anything else is the engine running out of memory or stack
+  return code <= 2 ? code : internal('The analysis ended unexpectedly.')
 }
 
 process.exitCode = await main()

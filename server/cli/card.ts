@@ -2,7 +2,6 @@ import { readFileSync } from 'node:fs'
 import path from 'node:path'
 import { parseArgs } from 'node:util'
 import type { CardPart } from '#shared/model/card-document.ts'
-import { analyse } from '#shared/stability/card.ts'
 
 /**
  * `npm run --silent card -- FILE [--parts steady,hopf,cycles,map]`: a model document in, its stability card out.
@@ -46,9 +45,12 @@ function readInput(file: string): string {
   }
 }
 
-function main(): number {
+async function main(): Promise<number> {
   const { file, parts } = readArguments()
-  const result = analyse(readInput(file), parts ? { parts } : {})
+  const text = readInput(file)
+  // loaded here, so that a fault in loading is told like every other
+  const { analyse } = await import('#shared/stability/card.ts')
+  const result = analyse(text, parts ? { parts } : {})
   if (!result.ok) {
     process.stderr.write(`${JSON.stringify({ errors: result.errors })}\n`)
     return 2
@@ -58,7 +60,7 @@ function main(): number {
 }
 
 try {
-  process.exitCode = main()
+  process.exitCode = await main()
 } catch (error) {
   const code = error instanceof Misuse ? 'not-readable' : 'internal'
   const message = error instanceof Error ? error.message : String(error)

@@ -2,7 +2,7 @@ import type { Branch, HopfPoint, StabilityCard, SteadyState } from '#shared/mode
 import type { BranchPath } from './branches.ts'
 import type { WalkEnd } from './continuation.ts'
 import type { Forms } from './forms.ts'
-import { controlOf, type Frame, linearise, observedAt, scaled, spectrumHere, stateOf } from './frame.ts'
+import { controlOf, type Frame, linearise, observedAt, scaled, snapped, spectrumHere, stateOf } from './frame.ts'
 import { type BranchHopf, sameHopf, samePoint } from './hopf.ts'
 import { kindOf } from './kinds.ts'
 import { eigenvalueList, isStable, type Spectrum } from './spectrum.ts'
@@ -38,7 +38,7 @@ function cleaned(value: number, width: number): number {
 }
 
 function cleanedControl(frame: Frame, z: Float64Array): number {
-  return cleaned(controlOf(frame, z), frame.high - frame.low)
+  return snapped(frame, controlOf(frame, z))
 }
 
 /** Steady states at the own value, sorted by the observed value, then by the states in document order. */

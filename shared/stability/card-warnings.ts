@@ -22,7 +22,7 @@ export function createWarnings(first: readonly CardWarning[]): WarningList {
     all.push(warning)
   }
   for (const warning of first) add(warning)
-  return { add, list: () => all }
+  return { add, list: () => [...all] }
 }
 
 const kinked = new Set(['abs', 'sign', 'min', 'max'])
@@ -133,10 +133,13 @@ export function warnOfBranches(frame: Frame, set: BranchSet, warnings: WarningLi
     const message = `A whole line of steady states stands at ${symbolOfControl(frame)} = ${fourDigits(controlOf(frame, z))}.`
     warnings.add({ code: 'continuum-of-steady-states', message })
   }
-  if (frame.budget.spent()) {
-    const message = 'The work allowed for one card was used up: branches or Hopf points may be missing.'
-    warnings.add({ code: 'budget-spent', message })
-  }
+  if (frame.budget.spent()) warnOfSpentBudget(warnings)
+}
+
+/** The work allowed, or the time of whoever asked, is used up. */
+export function warnOfSpentBudget(warnings: WarningList): void {
+  const message = 'The work allowed for one card was used up: branches, Hopf points or sensitivities may be missing.'
+  warnings.add({ code: 'budget-spent', message })
 }
 
 /** What stands beside a verdict. */

@@ -23,6 +23,7 @@ import {
   warnOfMissingParts,
   warnOfNoWindow,
   warnOfSearch,
+  warnOfSpentBudget,
 } from './card-warnings.ts'
 import { engineVersion } from './engine.ts'
 import { createForms, type Forms } from './forms.ts'
@@ -33,7 +34,7 @@ import { markRealCrossings } from './real-crossings.ts'
 import { sensitivitiesOf } from './sensitivity.ts'
 import { settle } from './settle.ts'
 import { findSteadyStates, type SteadyStateResult } from './steady-states.ts'
-import { type WindowLists, windowAround } from './window.ts'
+import { type ListedHopf, type WindowLists, windowAround } from './window.ts'
 
 export interface AnalyseOptions {
   /** Default: everything but the map. */
@@ -42,6 +43,8 @@ export interface AnalyseOptions {
   onProgress?: (stage: CardStage, share: number) => void
   /** Asked at least every 50 ms; `true` ends the analysis with what there is. */
   shouldStop?: () => boolean
+  /** Handed the card as soon as it is complete but for the sensitivities, which take longest. */
+  onCard?: (card: StabilityCard) => void
 }
 
 export type AnalyseResult = { ok: true; card: StabilityCard } | { ok: false; errors: ModelError[] }
@@ -77,9 +80,18 @@ export function analyse(document: unknown, options: AnalyseOptions = {}): Analys
     control: checked.system.parameters[control]?.symbol ?? '',
     observed: observed.symbol,
   } as const
-  const body = partsOf(analysis, parts, warnings, options)
+  const { body, operating } = partsOf(analysis, parts, warnings, options)
   warnOfMissingParts(parts, warnings)
-  return { ok: true, card: { ...head, ...body, warnings: warnings.list() } }
+  const card = { ...head, ...body, warnings: warnings.list() }
+  if (!parts.has('hopf')) return { ok: true, card }
+  options.onCard?.(card)
+  const { frame } = analysis
+  const sensitivity = operating.flatMap((hopf, i) => {
+    options.onProgress?.('sensitivity', i / operating.length)
+    return sensitivitiesOf(frame, hopf)
+  })
+  if (frame.budget.spent()) warnOfSpentBudget(warnings)
+  return { ok: true, card: { ...card, sensitivity, warnings: warnings.list() } }
 }
 
 /** What was computed, before it is put into the card's words. */
@@ -116,9 +128,10 @@ function compute(model: CompiledModel, warnings: WarningList, options: AnalyseOp
     tell('onsets', i / set.paths.length)
     const samples = path.vertices.map(({ sample }) => sample)
     const [first, last] = path.ends.map(({ kind }) => kind === 'range-end' || kind === 'box-left')
-    const points = findHopfPoints(frame, forms, samples, first ?? false, last ?? false)
-    analysis.hopf.push(...points.map((point) => ({ point, path })))
-    analysis.realCrossings.push(...markRealCrossings(frame, path, points))
+    const found = findHopfPoints(frame, forms, samples, first ?? false, last ?? false)
+    const { points, hopf } = markRealCrossings(frame, path, found)
+    analysis.hopf.push(...hopf.map((point) => ({ point, path })))
+    analysis.realCrossings.push(...points)
   })
   tell('onsets', 1)
   warnOfSearch(frame, own, warnings)
@@ -147,7 +160,7 @@ function partsOf(
   parts: Set<CardPart>,
   warnings: WarningList,
   options: AnalyseOptions,
-): Partial<StabilityCard> {
+): { body: Partial<StabilityCard>; operating: ListedHopf[] } {
   const { frame, forms, own, set } = analysis
   const states = listSteadyStates(frame, own)
   const { listed, judgements } = listHopf(frame, forms, analysis.hopf)
@@ -175,13 +188,8 @@ function partsOf(
     }
     options.onProgress?.('window', 0)
     out.window = runningWindow(frame, states, lists, warnings)
-    const operating = listed.filter(({ card }) => card.operating)
-    out.sensitivity = operating.flatMap((hopf, i) => {
-      options.onProgress?.('sensitivity', i / operating.length)
-      return sensitivitiesOf(frame, hopf)
-    })
   }
-  return out
+  return { body: out, operating: listed.filter(({ card }) => card.operating) }
 }
 
 /** The window around the steady state that the model settles on from its start values. */

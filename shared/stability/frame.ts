@@ -102,6 +102,14 @@ export function controlOf(frame: Frame, z: Float64Array): number {
   return (z[frame.n] as number) * (frame.unit[frame.n] as number)
 }
 
+/** A computed control value freed of rounding: zero where it is zero, the ends of the range as the document has them. */
+export function snapped(frame: Frame, p: number): number {
+  const slack = 4e-16 * Math.max(frame.high - frame.low, Math.abs(frame.low), Math.abs(frame.high))
+  if (Math.abs(p) <= slack) return 0
+  if (Math.abs(p - frame.low) <= slack) return frame.low
+  return Math.abs(p - frame.high) <= slack ? frame.high : p
+}
+
 /** Evaluates residual, Jacobian and scaled derivatives at z; false where something is not finite. */
 export function linearise(frame: Frame, z: Float64Array): boolean {
   const { model, n, unit, x, parameters, residual, jacobian, derivatives, byControl } = frame

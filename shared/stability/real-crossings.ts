@@ -11,21 +11,30 @@ import { onAxis, type Spectrum } from './spectrum.ts'
  * unstable eigenvalues, after Hopf points and marked vertices, gives them away. Each becomes a marked vertex of its
  * path; the kind is "other", and no branch is switched to from here (branches beside it are found from other values).
  *
- * Returns the points; `paths` get their vertices.
+ * Returns the points, and the Hopf points with their segments counted anew.
  */
-export function markRealCrossings(frame: Frame, path: BranchPath, hopf: readonly BranchHopf[]): Float64Array[] {
-  const found: Float64Array[] = []
+export function markRealCrossings(
+  frame: Frame,
+  path: BranchPath,
+  hopf: readonly BranchHopf[],
+): { points: Float64Array[]; hopf: BranchHopf[] } {
+  const points: Float64Array[] = []
   const { vertices } = path
+  let moved = [...hopf]
   for (let i = 0; i + 1 < vertices.length; i++) {
     const a = vertices[i] as Vertex
     const b = vertices[i + 1] as Vertex
-    if (a.mark !== null || b.mark !== null || hopf.some(({ segment }) => segment === i)) continue
+    if (a.mark !== null || b.mark !== null || moved.some(({ segment }) => segment === i)) continue
     if (!clear(a.sample.spectrum) || !clear(b.sample.spectrum)) continue
     if (unstable(a.sample.spectrum) === unstable(b.sample.spectrum)) continue
     const sample = bisect(frame, a.sample, b.sample)
-    if (sample) found.push(sample.z)
+    if (!sample) continue
+    points.push(sample.z)
+    vertices.splice(i + 1, 0, { sample, mark: 'branch-point' })
+    moved = moved.map((point) => (point.segment > i ? { ...point, segment: point.segment + 1 } : point))
+    i++
   }
-  return found
+  return { points, hopf: moved }
 }
 
 function clear(s: Spectrum): boolean {

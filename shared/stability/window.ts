@@ -1,7 +1,7 @@
 import type { HopfPoint, RunningWindow } from '#shared/model/card-document.ts'
 import { type BranchPath, findOnPaths } from './branches.ts'
 import type { Vertex, WalkEnd } from './continuation.ts'
-import { controlOf, type Frame } from './frame.ts'
+import { controlOf, type Frame, snapped } from './frame.ts'
 import type { BranchHopf } from './hopf.ts'
 import { isStable } from './spectrum.ts'
 
@@ -73,16 +73,18 @@ function follow(
     }
     const next = direction === 1 ? at + 1 : at
     const vertex = vertices[next] as Vertex
-    const stop = stopAt(frame, lists, vertex, vertices[next + direction])
-    if (stop) return { p: controlOf(frame, vertex.sample.z), end: stop }
-    const last = next === 0 || next === vertices.length - 1
-    if (last && !closed) {
-      return { p: controlOf(frame, vertex.sample.z), end: endOf(frame, lists, path, direction, vertex) }
+    const stop = stopAt(lists, vertex, vertices[next + direction])
+    if (stop === 'unexplained') {
+      // stability was lost on the way here, at a point that could not be located: the last stable one is the safe one
+      const before = vertices[next - direction] as Vertex
+      return { p: edgeOf(frame, before), end: { kind: 'branch-point' } }
     }
+    if (stop) return { p: edgeOf(frame, vertex), end: stop }
+    const last = next === 0 || next === vertices.length - 1
+    if (last && !closed) return { p: edgeOf(frame, vertex), end: endOf(lists, path, direction, vertex) }
     at = last ? (direction === 1 ? 0 : vertices.length - 2) : at + direction
   }
-  const here = vertices[segment] as Vertex
-  return { p: controlOf(frame, here.sample.z), end: { kind: 'range-end' } }
+  return { p: edgeOf(frame, vertices[segment] as Vertex), end: { kind: 'range-end' } }
 }
 
 /** The first Hopf point met on a segment in one direction, beyond `share` where the walk sets out in it. */
@@ -108,28 +110,31 @@ function firstOnset(
   return first
 }
 
-/** What ends the stable stretch at a vertex, or null where it goes on. */
-function stopAt(frame: Frame, lists: WindowLists, vertex: Vertex, beyond: Vertex | undefined): End | null {
-  const { z, spectrum } = vertex.sample
-  if (vertex.mark === 'fold') return indexed('fold', lists.foldIndex(z))
-  const stable = vertex.mark === null ? isStable(spectrum) : !beyond || isStable(beyond.sample.spectrum)
-  if (stable) return null
-  // a Hopf point on the vertex itself or just beyond it has been met already: what is left is a real eigenvalue
-  return indexed('branch-point', nearestIndex(frame, lists, z))
+/** Control value of a vertex; the ends of the range exactly, as the document has them. */
+function edgeOf(frame: Frame, vertex: Vertex): number {
+  return snapped(frame, controlOf(frame, vertex.sample.z))
 }
 
-function nearestIndex(_frame: Frame, lists: WindowLists, z: Float64Array): number {
-  return lists.branchPointIndex(z)
+/** What ends the stable stretch at a vertex, or null where it goes on. */
+function stopAt(lists: WindowLists, vertex: Vertex, beyond: Vertex | undefined): End | 'unexplained' | null {
+  const { z, spectrum } = vertex.sample
+  if (vertex.mark === 'fold') return indexed('fold', lists.foldIndex(z))
+  if (vertex.mark === 'branch-point') {
+    return beyond && isStable(beyond.sample.spectrum) ? null : indexed('branch-point', lists.branchPointIndex(z))
+  }
+  if (isStable(spectrum)) return null
+  const index = lists.branchPointIndex(z)
+  return index >= 0 ? { kind: 'branch-point', index } : 'unexplained'
 }
 
 function indexed(kind: 'fold' | 'branch-point', index: number): End {
   return index >= 0 ? { kind, index } : { kind }
 }
 
-function endOf(frame: Frame, lists: WindowLists, path: BranchPath, direction: 1 | -1, vertex: Vertex): End {
+function endOf(lists: WindowLists, path: BranchPath, direction: 1 | -1, vertex: Vertex): End {
   const end: WalkEnd = path.ends[direction === 1 ? 1 : 0]
   if (end.kind === 'range-end') return { kind: 'range-end' }
-  if (end.kind === 'branch-point') return indexed('branch-point', nearestIndex(frame, lists, vertex.sample.z))
+  if (end.kind === 'branch-point') return indexed('branch-point', lists.branchPointIndex(vertex.sample.z))
   // a walk that could not go on (not finite, no budget) knows nothing beyond: the safe reading is the box's
   return { kind: 'box-left' }
 }
