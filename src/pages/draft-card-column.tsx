@@ -47,6 +47,7 @@ export function DraftCardColumn({
       state={live.computing ? 'computing' : errors.length > 0 || live.failure ? 'older' : 'live'}
       errors={errors}
       trouble={live.failure}
+      exact={live.exact}
       computedAt={shown?.at.toISOString() ?? null}
       at={at}
       onAt={setAt}

@@ -20,6 +20,7 @@ import { DraftCardColumn } from './draft-card-column.tsx'
 import { DraftModelColumn } from './draft-model-column.tsx'
 import { PageGate } from './page-gate.tsx'
 import { useInForce } from './use-in-force.ts'
+import { useRunningPoint } from './use-running-point.ts'
 
 /** The co-edit view: one draft, everybody in it at once, the card beside it following every edit. */
 export function ModelEditPage() {
@@ -42,7 +43,8 @@ function Draft({ page }: { page: Page }) {
 function Editing({ page, connection, onReload }: { page: Page; connection: DraftConnection; onReload: () => void }) {
   const state = useConnectionState(connection)
   const content = useDraftContent(connection.doc)
-  const live = useLiveCard(state.synced ? content : null)
+  const [at] = useRunningPoint()
+  const live = useLiveCard(state.synced ? content : null, at)
   const readOnly =
     !state.synced ||
     state.phase === 'refused' ||

@@ -1,53 +1,96 @@
-import type { CardWarning, StabilityCard } from '#shared/model/card-document.ts'
+import { z } from 'zod'
+import { cardWarning, type StabilityCard, steadyState } from '#shared/model/card-document.ts'
 import type { ModelDocument } from '#shared/model/document.ts'
 import type { DraftContent } from '#shared/model/draft.ts'
-import type { ModelError } from '#shared/model/errors.ts'
-import type { CardStage } from '#shared/stability/messages.ts'
+import { errorCodes } from '#shared/model/errors.ts'
+import { cardStages } from '#shared/stability/messages.ts'
 
 /**
- * What the co-edit view and its worker say to each other. The page sends one draft at a time; the worker answers each
- * with exactly one `checked` (what the text says, at once), any number of `progress`, and then, where the draft makes a
- * model, exactly one of `card` or `failed`; all carry the request's id.
+ * What the co-edit view and its worker say to each other. The page sends one request at a time.
+ *
+ * `draft`: the worker answers with exactly one `checked` (what the text says, at once), any number of `progress`, and
+ * then, where the draft makes a model, exactly one of `card` or `failed`. `at` (a model that was computed before, at
+ * another value of its control) is answered with exactly one of `at` or `failed`. All carry the request's id.
+ *
+ * Both sides read what comes in with these schemas. Documents and cards are made on the other side by our own code from
+ * input it has checked, and they are large: of them only the format is looked at.
  */
-export interface DraftRequest {
-  id: number
-  draft: DraftContent
-}
+const record = (value: unknown): value is Record<string, unknown> => typeof value === 'object' && value !== null
+const document = z.custom<ModelDocument>((value) => record(value) && value.format === 'brinkbook-model')
+const card = z.custom<StabilityCard>((value) => record(value) && value.format === 'brinkbook-card')
+const draft = z.custom<DraftContent>((value) => record(value) && typeof value.equations === 'string')
+
+const request = z.discriminatedUnion('kind', [
+  z.object({ kind: z.literal('draft'), id: z.number(), draft }),
+  z.object({ kind: z.literal('at'), id: z.number(), document, p: z.number() }),
+])
+export type WorkerRequest = z.infer<typeof request>
 
 /** One statement as the typeset view shows it, and what stands at the right margin of its line. */
-export interface DraftLine {
-  line: number
-  kind: 'helper' | 'equation' | 'comment' | 'unread'
-  tex: string | null
-  text: string
-}
+const draftLine = z.object({
+  line: z.number(),
+  kind: z.enum(['helper', 'equation', 'comment', 'unread']),
+  tex: z.string().nullable(),
+  text: z.string(),
+})
+export type DraftLine = z.infer<typeof draftLine>
 
-export interface CheckedReply {
-  kind: 'checked'
-  id: number
+const modelError = z.object({
+  code: z.enum(errorCodes),
+  message: z.string(),
+  line: z.number().optional(),
+  column: z.number().optional(),
+  length: z.number().optional(),
+  path: z.string().optional(),
+  cures: z.array(z.object({ label: z.string(), replacement: z.string() })).optional(),
+})
+
+const checkedReply = z.object({
+  kind: z.literal('checked'),
+  id: z.number(),
   /** Null where there are errors. */
-  document: ModelDocument | null
-  errors: ModelError[]
-  warnings: CardWarning[]
-  lines: DraftLine[]
+  document: document.nullable(),
+  errors: z.array(modelError),
+  warnings: z.array(cardWarning),
+  lines: z.array(draftLine),
   /** Names of the helper quantities, for completion and the choice of the observed quantity. */
-  helpers: string[]
-}
+  helpers: z.array(z.string()),
+})
+export type CheckedReply = z.infer<typeof checkedReply>
 
-export interface CardReply {
-  kind: 'card'
-  id: number
-  document: ModelDocument
-  card: StabilityCard
+const cardReply = z.object({
+  kind: z.literal('card'),
+  id: z.number(),
+  document,
+  card,
   /** Values of the helpers at the steady state the card speaks of, by line; empty where there is none. */
-  helperValues: { line: number; value: number }[]
-}
+  helperValues: z.array(z.object({ line: z.number(), value: z.number() })),
+})
+export type CardReply = z.infer<typeof cardReply>
 
-export type WorkerReply =
-  | CheckedReply
-  | CardReply
-  | { kind: 'progress'; id: number; stage: CardStage; share: number }
+/** The steady states at one value of the control. `complete`: proved that the box holds no others. */
+const atReply = z.object({
+  kind: z.literal('at'),
+  id: z.number(),
+  p: z.number(),
+  steadyStates: z.array(steadyState),
+  complete: z.boolean(),
+})
+export type AtReply = z.infer<typeof atReply>
+
+const reply = z.discriminatedUnion('kind', [
+  checkedReply,
+  cardReply,
+  atReply,
+  z.object({ kind: z.literal('progress'), id: z.number(), stage: z.enum(cardStages), share: z.number() }),
   /** A fault of the program or a budget that was spent, not a fault of the text. */
-  | { kind: 'failed'; id: number; message: string }
+  z.object({ kind: z.literal('failed'), id: z.number(), message: z.string() }),
   /** Sent once, when the worker is warm. */
-  | { kind: 'ready' }
+  z.object({ kind: z.literal('ready') }),
+])
+export type WorkerReply = z.infer<typeof reply>
+
+/** What came from the page; null for anything else. */
+export const readRequest = (data: unknown): WorkerRequest | null => request.safeParse(data).data ?? null
+/** What came from the worker; null for anything else. */
+export const readReply = (data: unknown): WorkerReply | null => reply.safeParse(data).data ?? null

@@ -1,6 +1,7 @@
 import '#src/lib/no-eval.ts'
+import { answerAt } from './answer-at.ts'
 import { answerDraft } from './answer-draft.ts'
-import type { DraftRequest, WorkerReply } from './messages.ts'
+import { readRequest, type WorkerReply } from './messages.ts'
 import { warmUpDraft } from './warm-up.ts'
 
 const post = (reply: WorkerReply) => self.postMessage(reply)
@@ -9,14 +10,14 @@ const post = (reply: WorkerReply) => self.postMessage(reply)
 answerDraft(0, warmUpDraft, () => undefined)
 post({ kind: 'ready' })
 
-self.onmessage = ({ data }: MessageEvent<DraftRequest>) => {
+self.onmessage = ({ data }: MessageEvent<unknown>) => {
+  const request = readRequest(data)
+  if (!request) return
   try {
-    answerDraft(data.id, data.draft, post)
+    if (request.kind === 'draft') answerDraft(request.id, request.draft, post)
+    else answerAt(request.id, request.document, request.p, post)
   } catch (error) {
-    post({
-      kind: 'failed',
-      id: data.id,
-      message: error instanceof Error ? error.message : 'The analysis ended without an answer.',
-    })
+    const message = error instanceof Error ? error.message : 'it ended without an answer'
+    post({ kind: 'failed', id: request.id, message: `The calculation met a fault of its own: ${message}` })
   }
 }

@@ -1,7 +1,6 @@
-import { useEffect, useState, useSyncExternalStore } from 'react'
+import { useEffect, useLayoutEffect, useState, useSyncExternalStore } from 'react'
 import type { DraftContent } from '#shared/model/draft.ts'
-import { type CardPort, type CardRunner, type CardState, createCardRunner } from './card-runner.ts'
-import type { WorkerReply } from './messages.ts'
+import { type CardPort, type CardRunner, type CardState, createCardRunner, idleCard } from './card-runner.ts'
 
 function spawn(): CardPort {
   const worker = new Worker(new URL('./stability.worker.ts', import.meta.url), { type: 'module' })
@@ -11,35 +10,50 @@ function spawn(): CardPort {
     postMessage: (request) => worker.postMessage(request),
     terminate: () => worker.terminate(),
   }
-  worker.onmessage = (event: MessageEvent<WorkerReply>) => port.onmessage?.(event)
+  worker.onmessage = (event: MessageEvent<unknown>) => port.onmessage?.(event)
   worker.onerror = (event) => port.onerror?.(event)
   return port
 }
 
-const idle: CardState = { checked: null, card: null, computing: true, older: false, progress: null, failure: null }
+const first: CardState = { ...idleCard, computing: true }
 const never = () => () => undefined
+/** The running point has to rest this long before its steady states are computed and not only read off the branches. */
+const rest = 150
 
-/** The live card of a draft, recomputed in a worker with every edit; the newest edit wins. Null: nothing to compute yet. */
-export function useLiveCard(draft: DraftContent | null): CardState {
+/**
+ * The live card of a draft, recomputed in a worker with every edit; the newest edit wins. Null: nothing to compute yet.
+ * `at` is the viewer's running point: where it is not the model's own value, the steady states there are computed as well.
+ *
+ * Leaves one performance measure, `card-update`, for each card: from the edit to the moment the page holds the card.
+ */
+export function useLiveCard(draft: DraftContent | null, at: number | null = null): CardState {
   const [runner, setRunner] = useState<CardRunner | null>(null)
   useEffect(() => {
-    const made = createCardRunner({
-      spawn,
-      // From the edit to its card, as the page itself measures it (performance entries of this name).
-      onCard: () => performance.measure('card-update', { start: lastEdit.at, end: performance.now() }),
-    })
+    const made = createCardRunner({ spawn })
     setRunner(made)
     return () => {
       made.close()
       setRunner(null)
     }
   }, [])
-  useEffect(() => {
-    if (!runner || !draft) return
-    lastEdit.at = performance.now()
-    runner.analyse(draft)
+  useLayoutEffect(() => {
+    if (runner && draft) runner.analyse(draft, performance.now())
   }, [runner, draft])
-  return useSyncExternalStore(runner?.subscribe ?? never, runner?.getState ?? (() => idle))
+  const state = useSyncExternalStore(runner?.subscribe ?? never, runner?.getState ?? (() => first))
+  const { card } = state
+  useLayoutEffect(() => {
+    if (!card) return
+    performance.clearMeasures('card-update')
+    performance.measure('card-update', { start: card.editedAt, end: performance.now() })
+  }, [card])
+  useEffect(() => {
+    if (!runner || !card) return
+    if (at === null) {
+      runner.refine(null)
+      return
+    }
+    const timer = setTimeout(() => runner.refine(at), rest)
+    return () => clearTimeout(timer)
+  }, [runner, card, at])
+  return state
 }
-
-const lastEdit = { at: 0 }
