@@ -154,7 +154,8 @@ class UpdateWalk {
     if (struct instanceof Y.Skip) return null
     const { client, clock } = struct.id
     if (clock > this.state(client)) return 'never'
-    if (!(struct instanceof Y.Item) || clock + struct.length <= this.state(client)) return null
+    // Also of what is known already: Yjs asks for its references before it sees that.
+    if (!(struct instanceof Y.Item)) return null
     const parent: unknown = struct.parent
     for (const id of [struct.origin, struct.rightOrigin, parent instanceof Y.ID ? parent : null]) {
       if (!id) continue
