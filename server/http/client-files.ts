@@ -3,6 +3,7 @@ import path from 'node:path'
 import express, { type RequestHandler, Router } from 'express'
 import type { Config } from '#server/config.ts'
 import { AppError } from './app-error.ts'
+import { compressedAssets } from './compressed-assets.ts'
 import { nothingHere } from './problems.ts'
 import { allowNonce } from './security-headers.ts'
 
@@ -30,6 +31,7 @@ export function clientFiles(config: Config, source: ClientSource): Router {
   else {
     const assets = path.join(source.directory, 'assets')
     const options = { index: false, redirect: false, dotfiles: 'ignore', fallthrough: true } as const
+    router.use('/assets', compressedAssets(assets))
     router.use('/assets', express.static(assets, { ...options, immutable: true, maxAge: '1y' }))
     router.use(express.static(source.directory, { ...options, maxAge: 0, extensions: false }))
   }
