@@ -20,20 +20,15 @@ export function answerDraft(id: number, draft: DraftContent, post: (reply: Worke
     helpers: lines.flatMap(({ kind, text }) => (kind === 'helper' ? (/^\s*([^\s=]+)\s*=/.exec(text)?.[1] ?? []) : [])),
   })
   if (!checked.ok) return
-  const result = analyse(checked.document, {
+  const { document, system } = checked
+  const postCard = (card: StabilityCard, complete: boolean) =>
+    post({ kind: 'card', id, document, card, complete, helperValues: valuesOf(system, card) })
+  const result = analyse(document, {
     onProgress: (stage, share) => post({ kind: 'progress', id, stage, share }),
+    onCard: (card) => postCard(card, false),
   })
-  if (!result.ok) {
-    post({ kind: 'failed', id, message: result.errors[0]?.message ?? 'The analysis ended without an answer.' })
-    return
-  }
-  post({
-    kind: 'card',
-    id,
-    document: checked.document,
-    card: result.card,
-    helperValues: valuesOf(checked.system, result.card),
-  })
+  if (result.ok) postCard(result.card, true)
+  else post({ kind: 'failed', id, message: result.errors[0]?.message ?? 'The analysis ended without an answer.' })
 }
 
 /** The helpers at the first stable steady state of the page's value, else at the first one. */

@@ -64,6 +64,10 @@ interface Waiting {
   editedAt: number
 }
 
+/** Progress is told once a run has taken so long, and then so often, in ms. */
+const progressAfter = 300
+const progressEvery = 100
+
 /** So many faults in a row and the runner waits for an edit before it tries again. */
 const mostCrashes = 3
 
@@ -80,7 +84,7 @@ export function createCardRunner(options: CardRunnerOptions): CardRunner {
   const listeners = new Set<() => void>()
   let active = listen(spawn())
   let spare: CardPort | null = null
-  let running: { id: number; since: number; editedAt: number; draft: boolean } | null = null
+  let running: { id: number; since: number; told: number; editedAt: number; draft: boolean } | null = null
   let waiting: Waiting | null = null
   let wanted: number | null = null
   let giveUp: ReturnType<typeof setTimeout> | undefined
@@ -107,8 +111,13 @@ export function createCardRunner(options: CardRunnerOptions): CardRunner {
   function take(data: unknown): void {
     const reply = readReply(data)
     if (!reply || reply.kind === 'ready' || !running || reply.id !== running.id) return
-    if (reply.kind === 'progress') set({ progress: { stage: reply.stage, share: reply.share } })
-    else if (reply.kind === 'checked') {
+    if (reply.kind === 'progress') {
+      // Most runs are over before a person could read how far they are, and each change draws the page anew.
+      const time = Date.now()
+      if (time - running.since < progressAfter || time - running.told < progressEvery) return
+      running.told = time
+      set({ progress: { stage: reply.stage, share: reply.share } })
+    } else if (reply.kind === 'checked') {
       const ends = reply.document === null
       // Text that cannot be read leaves the card as it was.
       set({ checked: reply, computing: !ends || waiting !== null, older: state.card !== null, failure: null })
@@ -117,9 +126,11 @@ export function createCardRunner(options: CardRunnerOptions): CardRunner {
       const { editedAt } = running
       crashes = 0
       const busy = waiting !== null
-      const timed = { ...reply, at: now(), editedAt }
-      set({ card: timed, computing: busy, older: busy, progress: null, failure: null, exact: null })
-      finish()
+      const same = state.card?.id === reply.id
+      const timed = { ...reply, at: same && state.card ? state.card.at : now(), editedAt }
+      const exact = same ? state.exact : null
+      set({ card: timed, computing: busy, older: busy, progress: null, failure: null, exact })
+      if (reply.complete) finish()
     } else if (reply.kind === 'at') {
       const { p, steadyStates, complete } = reply
       set({ exact: { p, steadyStates, complete } })
@@ -157,7 +168,7 @@ export function createCardRunner(options: CardRunnerOptions): CardRunner {
   }
 
   function begin(draft: boolean, editedAt: number): number {
-    running = { id: ++id, since: Date.now(), editedAt, draft }
+    running = { id: ++id, since: Date.now(), told: 0, editedAt, draft }
     hangs = setTimeout(() => onCrash('The calculation gave no answer and was started anew.'), longest)
     return id
   }

@@ -9,7 +9,7 @@ import { cardStages } from '#shared/stability/messages.ts'
  * What the co-edit view and its worker say to each other. The page sends one request at a time.
  *
  * `draft`: the worker answers with exactly one `checked` (what the text says, at once), any number of `progress`, and
- * then, where the draft makes a model, exactly one of `card` or `failed`. `at` (a model that was computed before, at
+ * then, where the draft makes a model, one or two `card` (the first without sensitivities) or one `failed`. `at` (a model that was computed before, at
  * another value of its control) is answered with exactly one of `at` or `failed`. All carry the request's id.
  *
  * Both sides read what comes in with these schemas. Documents and cards are made on the other side by our own code from
@@ -63,6 +63,8 @@ const cardReply = z.object({
   id: z.number(),
   document,
   card,
+  /** False where the sensitivities are still to come: another `card` with the same id follows. */
+  complete: z.boolean(),
   /** Values of the helpers at the steady state the card speaks of, by line; empty where there is none. */
   helperValues: z.array(z.object({ line: z.number(), value: z.number() })),
 })

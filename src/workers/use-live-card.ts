@@ -41,11 +41,13 @@ export function useLiveCard(draft: DraftContent | null, at: number | null = null
   }, [runner, draft])
   const state = useSyncExternalStore(runner?.subscribe ?? never, runner?.getState ?? (() => first))
   const { card } = state
+  const cardId = card?.id ?? null
+  const editedAt = card?.editedAt ?? 0
   useLayoutEffect(() => {
-    if (!card) return
+    if (cardId === null) return
     performance.clearMeasures('card-update')
-    performance.measure('card-update', { start: card.editedAt, end: performance.now() })
-  }, [card])
+    performance.measure('card-update', { start: editedAt, end: performance.now() })
+  }, [cardId, editedAt])
   useEffect(() => {
     if (!runner || !card) return
     if (at === null) {

@@ -4,7 +4,7 @@ import { answerAt } from '#src/workers/answer-at.ts'
 import { answerDraft } from '#src/workers/answer-draft.ts'
 import { type CardPort, createCardRunner } from '#src/workers/card-runner.ts'
 import type { WorkerRequest } from '#src/workers/messages.ts'
-import { bistable, calm } from '#tests/support/models.ts'
+import { bistable, calm, wheelset } from '#tests/support/models.ts'
 
 /** A port in place of a worker: it keeps what it is asked and answers when the test says so, with the real answers. */
 class HeldPort implements CardPort {
@@ -100,6 +100,32 @@ describe('one run at a time', () => {
     expect(card).not.toBeNull()
     expect(older).toBe(true)
     expect(computing).toBe(false)
+  })
+
+  test('the card is shown before its sensitivities are there', () => {
+    const { runner, port } = setUp()
+    const seen: ('first' | 'whole')[] = []
+    runner.analyse(draftFromDocument(wheelset(-0.01)))
+    runner.subscribe(() => {
+      const { card, computing } = runner.getState()
+      if (card && !computing) seen.push(card.complete ? 'whole' : 'first')
+    })
+    port(0).answer()
+    expect(seen).toEqual(['first', 'whole'])
+    // One onset, and every parameter but the control: V0, Vs, c3, c5, w, tau.
+    expect(runner.getState().card?.card.sensitivity).toHaveLength(6)
+  })
+
+  test('progress is told only of runs that take long', () => {
+    const { runner, port } = setUp()
+    runner.analyse(lag(1))
+    const tell = (share: number) => port(0).onmessage?.({ data: { kind: 'progress', id: 1, stage: 'branches', share } })
+    tell(0.1)
+    expect(runner.getState().progress).toBeNull()
+    vi.advanceTimersByTime(300)
+    tell(0.4)
+    tell(0.5)
+    expect(runner.getState().progress).toEqual({ stage: 'branches', share: 0.4 })
   })
 
   test('listeners hear of every change until they leave', () => {
