@@ -1,6 +1,6 @@
 import { z } from 'zod'
-import { type ChildPool, type ChildPoolOptions, createChildPool, type JobFailure } from './child-pool.ts'
 import { formattedTexts, type ReadCitations, readCitations } from './citation-job.ts'
+import { type ChildPool, type ChildPoolOptions, createChildPool, type JobFailure } from './pool.ts'
 
 export type CslItem = Record<string, unknown>
 

@@ -1,8 +1,8 @@
 import type { DraftContent } from '#shared/model/draft.ts'
 import type { ModelError } from '#shared/model/errors.ts'
 import { type CardAnswer, type CheckAnswer, cardAnswer, checkAnswer } from './card-job.ts'
-import { type ChildPool, type ChildPoolOptions, createChildPool } from './child-pool.ts'
 import { type Citations, createCitations } from './citations.ts'
+import { type ChildPool, type ChildPoolOptions, createChildPool } from './pool.ts'
 
 /** Why there is no answer: the work took too long or too much memory (`budget`), or too many wait or the server ends. */
 export type ComputeFailure = { ok: false; reason: 'budget' | 'busy' | 'aborted' }

@@ -3,7 +3,7 @@ import { z } from 'zod'
 const request = z.strictObject({ id: z.number(), job: z.unknown() })
 
 /**
- * The child's end of child-pool.ts: answers jobs one after another until the parent is gone. `work` may throw; the parent
+ * The child's end of pool.ts: answers jobs one after another until the parent is gone. `work` may throw; the parent
  * then hears `failed` and this child lives on. Call it once all modules are loaded.
  */
 export function serveJobs(work: (job: unknown) => unknown): void {

@@ -75,23 +75,54 @@ describe('a card on request', () => {
   })
 })
 
+/** Thirty coupled states with wide ranges: far more boxes than the search can settle in a minute. */
+function hostile() {
+  const names = Array.from({ length: 30 }, (_, i) => `x${i}`)
+  const equations = names.map((name, i) => {
+    const others = names.map((other, j) => `sin(${other}*${j + 1} + ${name}*mu)`).join(' + ')
+    return `d${name}/dt = ${others} - ${names[(i + 1) % 30]}^3`
+  })
+  return oscillator({
+    equations: equations.join('\n'),
+    states: names.map((symbol) => ({ symbol, low: -1000, high: 1000 })),
+    observed: 'x0',
+  })
+}
+
 describe('a model that takes too long', () => {
-  test('is ended at the deadline, and the next one is answered', async () => {
-    const slow = createCompute({ ...limits.compute, children: 1, cardDeadline: 1500 })
-    // Thirty coupled states with wide ranges: far more boxes than the search can settle in the time.
-    const names = Array.from({ length: 30 }, (_, i) => `x${i}`)
-    const equations = names.map((name, i) => {
-      const others = names.map((other, j) => `sin(${other}*${j + 1} + ${name}*mu)`).join(' + ')
-      return `d${name}/dt = ${others} - ${names[(i + 1) % 30]}^3`
-    })
-    const hostile = oscillator({
-      equations: equations.join('\n'),
-      states: names.map((symbol) => ({ symbol, low: -1000, high: 1000 })),
-      observed: 'x0',
-    })
-    const first = await slow.card(hostile)
-    expect(first).toEqual({ ok: false, reason: 'budget' })
-    await expect.poll(async () => (await slow.card(oscillator())).ok, { timeout: 60_000 }).toBe(true)
+  let slow: TestApp
+  let slowCompute: Compute
+  let by: Tab
+  beforeAll(async () => {
+    slowCompute = createCompute({ ...limits.compute, cardDeadline: 4000 })
+    slow = await createTestApp({ compute: slowCompute })
+    by = await slow.people.signedIn(await slow.people.person('Una Frith'))
+  })
+  afterAll(async () => {
+    await slowCompute.close()
     await slow.close()
+  })
+
+  test('is ended at the deadline; meanwhile others are answered, and its sender afterwards', async () => {
+    await expect.poll(async () => (await ask(oscillator(), by)).status, { timeout: 60_000 }).toBe(200)
+    const order: string[] = []
+    const note = async (
+      name: string,
+      answer: Promise<{ status: number; body: unknown; headers: Record<string, string> }>,
+    ) => {
+      const given = await answer
+      order.push(name)
+      return given
+    }
+    const other = await slow.people.signedIn(await slow.people.person('Wil Garth'))
+    const refused = note('hostile', Promise.resolve(ask(hostile(), by)))
+    const others = await Promise.all([
+      note('session', Promise.resolve(other.get(`${apiRoot}/session`))),
+      note('card', Promise.resolve(ask(oscillator(), other))),
+    ])
+    expect(others.map((answer) => answer.status)).toEqual([200, 200])
+    expectProblem(await refused, 'analysis-budget')
+    expect(order.at(-1)).toBe('hostile')
+    expect((await ask(oscillator(), by)).status).toBe(200)
   })
 })

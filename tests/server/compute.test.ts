@@ -1,6 +1,6 @@
 import { afterEach, describe, expect, test, vi } from 'vitest'
 import { z } from 'zod'
-import { type ChildPool, type ChildPoolOptions, createChildPool } from '#server/compute/child-pool.ts'
+import { type ChildPool, type ChildPoolOptions, createChildPool } from '#server/compute/pool.ts'
 
 const script = new URL('./fixtures/hostile-child.ts', import.meta.url)
 const open: { close(): Promise<void> }[] = []
