@@ -4,7 +4,7 @@ import { classes } from '#src/lib/class-names.ts'
 import { FigureText } from './figure-text.tsx'
 import { type BranchRow, branchRows, type SortKey, sortedRows } from './geometry/branch-rows.ts'
 import { eigenTexts } from './geometry/eigen-text.ts'
-import { figure, rateUnit, signedFigure } from './geometry/figures.ts'
+import { figure, observedFigure, rateUnit, signedFigure } from './geometry/figures.ts'
 import type { CardGeometry } from './geometry/scene.ts'
 import { nameOf, type Quantity } from './geometry/subject.ts'
 
@@ -73,7 +73,7 @@ export function BranchTable({ geometry, older }: { geometry: CardGeometry; older
               {row.event && <span className="ml-2 font-sans font-[620]">{row.event.name}</span>}
             </Cell>
             <Cell className="figures px-3 py-1 text-note">
-              <FigureText text={figure(row.value, copied)} />
+              <FigureText text={observedFigure(row.value, subject, copied)} />
             </Cell>
             <Cell className="figures px-3 py-1 text-note">
               <FigureText text={row.growth === null ? 'none' : signedFigure(row.growth, 4)} />

@@ -102,13 +102,10 @@ export function straight(verdict: HopfPoint['verdict'], more: Partial<HopfPoint>
         },
       ],
       hopf: [onset],
-      window: {
-        branch: 0,
-        from: 40,
-        to: 58,
-        low: { kind: 'range-end' },
-        high: { kind: 'onset', index: 0, verdict },
-      },
+      window:
+        onset.operating === false
+          ? null
+          : { branch: 0, from: 40, to: 58, low: { kind: 'range-end' }, high: { kind: 'onset', index: 0, verdict } },
       steadyStates: [
         {
           state: { y: 0, z: 0 },

@@ -1,5 +1,5 @@
 import { roleWord } from './events.ts'
-import { controlFigure, figure, withUnit } from './figures.ts'
+import { controlFigure, figure, observedFigure, withUnit } from './figures.ts'
 import type { Piece } from './pieces.ts'
 import type { CardGeometry } from './scene.ts'
 import { nameOf } from './subject.ts'
@@ -20,7 +20,7 @@ function pieceSentence(piece: Piece, geometry: CardGeometry): string {
   const kind = piece.stable ? 'Stable' : 'Unstable'
   const range = `${kind} steady state from ${from} to ${to}`
   if (!first || !last) return `${range}.`
-  const [a, b] = [figure(first.value), figure(last.value)]
+  const [a, b] = [observedFigure(first.value, subject), observedFigure(last.value, subject)]
   const level =
     a === b ? `at ${withUnit(a, subject.observed.unit)}` : `running from ${a} to ${withUnit(b, subject.observed.unit)}`
   return `${range}, ${nameOf(subject.observed)} ${level}.`

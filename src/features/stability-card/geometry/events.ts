@@ -68,7 +68,7 @@ function onsetName(look: OnsetLook, operating: boolean): string {
 
 function onsetDetail(point: HopfPoint, subject: Subject): string {
   const rhythm = `${frequencyFigure(point.omega, subject)}, ${angularFigure(point.omega, subject)}`
-  return point.operating ? rhythm : 'already unstable, not a limit'
+  return point.operating ? rhythm : 'already unstable'
 }
 
 const forkWords = {

@@ -22,7 +22,7 @@ function digitsFor(value: number, range: { low: number; high: number }): number 
   const step = (range.high - range.low) * 1e-3
   const size = Math.abs(value)
   if (!(step > 0) || size === 0) return controlDigits
-  return Math.min(12, Math.max(controlDigits, Math.floor(Math.log10(size)) - Math.floor(Math.log10(step))))
+  return Math.min(12, Math.max(controlDigits, Math.floor(Math.log10(size)) - Math.floor(Math.log10(step)) + 1))
 }
 
 /**
@@ -49,6 +49,11 @@ export function safeSide(point: Pick<HopfPoint, 'crossing' | 'operating'>): Roun
 
 /** A number of any other kind: three significant digits, to the nearest. */
 export const figure = (value: number, count: number = digits): string => formatNumber(value, { digits: count })
+
+/** A value of the observed quantity; what is rounding of its box is zero. */
+export function observedFigure(value: number, { box }: Subject, count: number = digits): string {
+  return formatNumber(value, { digits: count, noise: box ? 1e-12 * (box.high - box.low) : 0 })
+}
 
 /** With its sign, for coefficients and rates, where the sign is the message. */
 export function signedFigure(value: number, count: number = digits): string {

@@ -81,7 +81,12 @@ function endOf(branch: Branch, which: 0 | 1, at: readonly number[], specials: Sp
   return nearest?.end ?? { kind: 'branch-point', index: null }
 }
 
-function piecesOfBranch(branch: Branch, coordinates: number[][], all: Special[]): Piece[] {
+function piecesOfBranch(
+  branch: Branch,
+  coordinates: number[][],
+  all: Special[],
+  scale: ScaledBranches['scale'],
+): Piece[] {
   const specials = all.filter((special) => special.branch === null || special.branch === branch.id)
   const orders = inOneOrder(branch.points.map((point) => point.eigenvalues))
   const points = branch.points.map(({ p, state, observed, stable, eigenvalues }, i) => ({
@@ -111,14 +116,18 @@ function piecesOfBranch(branch: Branch, coordinates: number[][], all: Special[])
     pieces.push({ ...piece, points: [...piece.points, change.point], end: change.end })
     piece = { branch: branch.id, stable: b.stable, points: [change.point, b.point], start: change.end, end: final }
   }
-  return joined([...pieces, piece])
+  return joined([...pieces, piece], scale)
 }
 
 const samePlace = (a: CurvePoint, b: CurvePoint) => a.p === b.p && a.value === b.value
 
-/** Drops pieces that are a single place (a zero real part met at one point of the sweep) and joins what they parted. */
-function joined(pieces: Piece[]): Piece[] {
+/** Shorter than this, in coordinates in which every quantity spans 1, a piece is one place. */
+const onePlace = 1e-6
+
+/** Drops pieces that are one place (a zero real part met at one point of the sweep) and joins what they parted. */
+function joined(pieces: Piece[], scale: ScaledBranches['scale']): Piece[] {
   const kept: Piece[] = []
+  let skipped: PieceEnd | null = null
   for (const piece of pieces) {
     const first = piece.points[0]
     if (!first) continue
@@ -127,10 +136,16 @@ function joined(pieces: Piece[]): Piece[] {
       return !before || !samePlace(before, point)
     })
     const before = kept.at(-1)
-    if (points.length === 1 && before) continue
+    const from = scale(first)
+    const short = points.every((point) => gapBetween(scale(point), from) < onePlace)
+    if (short && pieces.length > 1) {
+      if (before) kept[kept.length - 1] = { ...before, end: piece.end }
+      else skipped = piece.start
+      continue
+    }
     if (before?.stable === piece.stable) {
       kept[kept.length - 1] = { ...before, points: [...before.points, ...points], end: piece.end }
-    } else kept.push({ ...piece, points })
+    } else kept.push({ ...piece, points, start: before ? piece.start : (skipped ?? piece.start) })
   }
   return kept
 }
@@ -142,5 +157,7 @@ function joined(pieces: Piece[]): Piece[] {
 export function piecesOf(card: StabilityCard): Piece[] {
   const scaled = scaledBranches(card)
   const specials = specialsOf(card, scaled)
-  return scaled.branches.flatMap(({ branch, coordinates }) => piecesOfBranch(branch, coordinates, specials))
+  return scaled.branches.flatMap(({ branch, coordinates }) =>
+    piecesOfBranch(branch, coordinates, specials, scaled.scale),
+  )
 }

@@ -9,7 +9,8 @@ export function stepOf({ control }: Subject): number {
   if (!(rough > 0)) return 1
   const power = 10 ** Math.floor(Math.log10(rough))
   const lead = rough / power
-  return (lead < 1.5 ? 1 : lead < 3.5 ? 2 : lead < 7.5 ? 5 : 10) * power
+  // The nearest on a logarithmic scale: the bounds are the square roots of 2, 10 and 50.
+  return (lead < 1.41 ? 1 : lead < 3.16 ? 2 : lead < 7.07 ? 5 : 10) * power
 }
 
 export const withinRange = (p: number, { control }: Subject): number => Math.min(control.high, Math.max(control.low, p))
