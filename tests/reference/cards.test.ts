@@ -99,7 +99,10 @@ describe.each(cases)('$name ($reference.source; $reference.sourceNote)', ({ refe
   test('turning points and branch points', () => {
     expect(card.folds?.map(({ p }) => p)).toHaveLength(want.folds.length)
     for (const fold of want.folds) {
-      expect(card.folds?.some(({ p }) => Math.abs(p - fold.p) < 1e-9 * range), `fold at ${fold.p}`).toBe(true)
+      expect(
+        card.folds?.some(({ p }) => Math.abs(p - fold.p) < 1e-9 * range),
+        `fold at ${fold.p}`,
+      ).toBe(true)
     }
     expect(card.branchPoints).toHaveLength(want.branchPoints.length)
     for (const point of want.branchPoints) {

@@ -28,9 +28,7 @@ const referenceCase = z.object({
   expect: z.object({
     steadyStates: z.object({
       p: z.number(),
-      list: z.array(
-        z.object({ state, eigenvalues: z.array(z.tuple([z.number(), z.number()])), stable: z.boolean() }),
-      ),
+      list: z.array(z.object({ state, eigenvalues: z.array(z.tuple([z.number(), z.number()])), stable: z.boolean() })),
     }),
     hopf: z.array(
       z.object({
