@@ -25,8 +25,8 @@ import type { CollabLog, Member, Room } from './rooms.ts'
  * (varUint, varString and varUint8Array as in lib0; sync and presence as in y-protocols.) Anything else, text frames and
  * surplus bytes included, is a bad frame; after three of them the socket is closed.
  *
- * Course of a connection: the server sends 101, then 100 with n = 0, then presence, and to those who may write its sync
- * step 1. The browser sends its sync step 1 and gets step 2; from then on it gets the others' updates. n counts the
+ * Course of a connection: the server sends 101, to those who may write its sync step 1, then 100 with n = 0, then
+ * presence. The browser sends its sync step 1 and gets step 2; from then on it gets the others' updates. n counts the
  * browser's sync step 2 and update messages in the order they were sent; "100 n" means that the first n are committed, or
  * need not be because a later one among them repeats them.
  *

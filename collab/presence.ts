@@ -146,7 +146,7 @@ function parseState(json: string): Record<string, unknown> | null | undefined {
     const value: unknown = JSON.parse(json)
     if (value === null) return null
     const read = anyObject.safeParse(value)
-    return read.success && !Object.hasOwn(read.data, '__proto__') ? read.data : undefined
+    return read.success && !Object.hasOwn(Object(value), '__proto__') ? read.data : undefined
   } catch {
     return undefined
   }

@@ -20,6 +20,7 @@ export class RawSocket {
   closed: { code: number; reason: string } | null = null
   /** HTTP status of a refused handshake. */
   refused: number | null = null
+  retryAfter: string | undefined
 
   constructor(url: string, options: { token?: string | null; origin?: string | null; headers?: object } = {}) {
     const { token = null, origin = ownOrigin } = options
@@ -38,6 +39,7 @@ export class RawSocket {
       this.closed = { code, reason: reason.toString() }
     })
     this.socket.on('unexpected-response', (request, response) => {
+      this.retryAfter = response.headers['retry-after']
       this.refused = response.statusCode ?? 0
       request.destroy()
     })
