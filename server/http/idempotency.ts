@@ -34,6 +34,16 @@ function unseal(secret: string, value: unknown): unknown {
   return JSON.parse(Buffer.concat([decipher.update(Buffer.from(data, 'base64')), decipher.final()]).toString('utf8'))
 }
 
+/** The answer once given to this very request of the person, or null. */
+export async function keptAnswer(
+  db: Database,
+  input: { personId: number; key: string; request: string },
+): Promise<Answer | null> {
+  const kept = await queries.find(db, input.personId, sha256(input.key))
+  if (kept?.requestHash !== sha256(input.request) || kept.status === null) return null
+  return { status: kept.status, ...storedAnswer.parse(unseal(input.key, kept.answer)) }
+}
+
 /**
  * Runs a request that makes something, at most once for each Idempotency-Key of a person: a repetition gets the first
  * answer again. A refused request may be tried again with the same key. A key whose first request never came to an end

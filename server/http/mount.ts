@@ -1,12 +1,12 @@
 import { type Request, type RequestHandler, type Response, Router } from 'express'
 import type { z } from 'zod'
 import type { AnyEndpoint, Endpoint } from '#shared/api/endpoint.ts'
-import { allow } from './access.ts'
+import { type Access, allow } from './access.ts'
 import { AppError } from './app-error.ts'
 import { jsonReader, readBody, readParams, readQuery } from './checked-input.ts'
 import type { Dependencies, HandlerContext } from './context.ts'
 import { matchesNone, quoteTag, readIfMatch } from './etag.ts'
-import { type Answer, once } from './idempotency.ts'
+import { type Answer, keptAnswer, once } from './idempotency.ts'
 import type { Limiter } from './rate-limits.ts'
 import type { SessionGate } from './session.ts'
 
@@ -48,7 +48,24 @@ export function mount<P extends z.ZodType, Q extends z.ZodType, B extends z.ZodT
     const viewer = await api.gate.loadViewer(request, now)
     const params = readParams(endpoint.params, request.params)
     const name = request.params.code ?? request.params.group
-    const access = await allow(api.db, viewer, endpoint.act, params.ok && typeof name === 'string' ? name : null)
+    const key = endpoint.idempotent ? request.get('idempotency-key') : undefined
+    let access: Access
+    try {
+      access = await allow(api.db, viewer, endpoint.act, params.ok && typeof name === 'string' ? name : null)
+    } catch (error) {
+      // The act itself may have taken the right away (sending locks the draft): a repetition still gets its answer.
+      const repeated = error instanceof AppError && error.code === 'may-not' && key !== undefined && viewer.person
+      if (!repeated) throw error
+      await readJson(request, response)
+      const kept = await keptAnswer(api.db, {
+        personId: repeated.id,
+        key,
+        request: requestTextOf(request, readBody(endpoint.body, request)),
+      })
+      if (!kept) throw error
+      send(request, response, kept)
+      return
+    }
     if (!params.ok) throw new AppError('not-found', 'There is nothing at this address.')
     const ifMatch = endpoint.ifMatch ? readIfMatch(request.get('if-match')) : null
     const query = readQuery(endpoint.query, request)
@@ -91,18 +108,19 @@ export function mount<P extends z.ZodType, Q extends z.ZodType, B extends z.ZodT
       const result = endpoint.response.parse(await handler(context))
       return { status: result === undefined ? 204 : endpoint.status, body: result, etag }
     }
-    const key = endpoint.idempotent ? request.get('idempotency-key') : undefined
-    const requestText = `${request.method} ${request.originalUrl}\n${JSON.stringify(body)}`
     const keep = api.limits.idempotencyKeys.keep
     const answer =
       key !== undefined && viewer.person
-        ? await once(api.db, { personId: viewer.person.id, key, request: requestText, now, keep }, run)
+        ? await once(api.db, { personId: viewer.person.id, key, request: requestTextOf(request, body), now, keep }, run)
         : await run()
     send(request, response, answer)
   }
   endpoints.set(serve, endpoint)
   api.router[methods[endpoint.method]](endpoint.path, serve)
 }
+
+const requestTextOf = (request: Request, body: unknown) =>
+  `${request.method} ${request.originalUrl}\n${JSON.stringify(body)}`
 
 function send(request: Request, response: Response, { status, body, etag }: Answer): void {
   if (etag !== null) {
