@@ -43,7 +43,10 @@ export interface CardRunner {
 export interface CardRunnerOptions {
   spawn: () => CardPort
   now?: () => Date
-  /** A run that has taken this long is given up for a newer text, in ms. */
+  /**
+   * A run that has taken this long is given up for a newer text, in ms. A model whose last run took long is given two and
+   * a half times that, up to five times as long as this: else somebody who types on would never see a card.
+   */
   patience?: number
   /** A run that has taken this long without an answer is taken to hang, in ms. */
   longest?: number
@@ -91,6 +94,7 @@ export function createCardRunner(options: CardRunnerOptions): CardRunner {
   let hangs: ReturnType<typeof setTimeout> | undefined
   let id = 0
   let crashes = 0
+  let lastRun = 0
 
   function set(change: Partial<CardState>): void {
     state = { ...state, ...change }
@@ -124,6 +128,7 @@ export function createCardRunner(options: CardRunnerOptions): CardRunner {
       if (ends) finish()
     } else if (reply.kind === 'card') {
       const { editedAt } = running
+      lastRun = Date.now() - running.since
       crashes = 0
       const busy = waiting !== null
       const same = state.card?.id === reply.id
@@ -212,7 +217,8 @@ export function createCardRunner(options: CardRunnerOptions): CardRunner {
         return
       }
       set({ computing: true, older: state.card !== null })
-      giveUp ??= setTimeout(onPatience, Math.max(0, patience - (Date.now() - running.since)))
+      const allowed = Math.min(5 * patience, Math.max(patience, 2.5 * lastRun))
+      giveUp ??= setTimeout(onPatience, Math.max(0, allowed - (Date.now() - running.since)))
     },
     refine(p) {
       wanted = p

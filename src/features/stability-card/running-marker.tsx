@@ -1,7 +1,7 @@
 import { type PointerEvent, useRef } from 'react'
 import { controlFigure } from './geometry/figures.ts'
 import type { Frame } from './geometry/frame.ts'
-import { distanceWords, movedByKey, nearestLimit, runningWords, snapped } from './geometry/running.ts'
+import { distanceWords, inRange, movedByKey, nearestLimit, runningWords, snapped } from './geometry/running.ts'
 import type { CardGeometry } from './geometry/scene.ts'
 import type { StateAt } from './geometry/states-at.ts'
 import { nameOf } from './geometry/subject.ts'
@@ -59,7 +59,7 @@ export function RunningMarker({ frame, geometry, states, at, onAt }: RunningMark
   const { subject, events } = geometry
   const dragging = useRef(false)
   const px = x.toPixel(at)
-  const inRange = at >= subject.control.low && at <= subject.control.high
+  const swept = inRange(at, subject)
   const label = `running at ${controlFigure(at, subject)}`
   const width = wordsWidth(label, 13, true)
   const right = px + 14 + width < plot.right + 12
@@ -71,7 +71,7 @@ export function RunningMarker({ frame, geometry, states, at, onAt }: RunningMark
   const handle = Math.min(plot.right, Math.max(plot.left, px))
   return (
     <>
-      {inRange && (
+      {swept && (
         <path
           aria-hidden
           d={`M${px} ${plot.top + 30}V${plot.bottom}`}
@@ -83,7 +83,7 @@ export function RunningMarker({ frame, geometry, states, at, onAt }: RunningMark
       )}
       <Margin frame={frame} geometry={geometry} at={at} />
       <g aria-hidden className="pointer-events-none">
-        {inRange &&
+        {swept &&
           states.map((state, i) => (
             <circle
               // biome-ignore lint/suspicious/noArrayIndexKey: two states may share branch and observed value
@@ -147,7 +147,7 @@ export function RunningMarker({ frame, geometry, states, at, onAt }: RunningMark
             strokeWidth="2"
             opacity="0"
           />
-          <path d="M0 1L7 8V25H-7V8Z" fill="var(--color-ink)" opacity={inRange ? 1 : 0.45} />
+          <path d="M0 1L7 8V25H-7V8Z" fill="var(--color-ink)" opacity={swept ? 1 : 0.45} />
           <path d="M-2 13.5v6M2 13.5v6" stroke="var(--color-sheet)" strokeWidth="1.4" />
         </g>
         <text

@@ -2,9 +2,11 @@ import type { StabilityCard } from '#shared/model/card-document.ts'
 import { sameSymbol } from '#shared/stability/summary.ts'
 import { ModelSymbol } from '#src/components/symbol.tsx'
 import { Cell, Row, Table, TableHead } from '#src/components/table.tsx'
+import { FigureText } from './figure-text.tsx'
 import type { Complex } from './geometry/eigen-paths.ts'
 import { eigenTexts } from './geometry/eigen-text.ts'
 import { controlFigure, figure, rateUnit } from './geometry/figures.ts'
+import { inRange } from './geometry/running.ts'
 import type { StateAt } from './geometry/states-at.ts'
 import type { Subject } from './geometry/subject.ts'
 
@@ -39,7 +41,10 @@ function StateValues({ state, subject }: { state: Listed['state']; subject: Subj
   const rest = subject.states.filter((row) => !rows.includes(row))
   const value = (row: Subject['states'][number]) => (
     <span key={row.symbol} className="mr-3 inline-block whitespace-nowrap">
-      <ModelSymbol name={row.symbol} /> = <span className="figures text-note">{figure(state[row.symbol] ?? 0, 4)}</span>
+      <ModelSymbol name={row.symbol} /> ={' '}
+      <span className="figures text-note">
+        <FigureText text={figure(state[row.symbol] ?? 0, 4)} />
+      </span>
       {row.unit && ` ${row.unit}`}
     </span>
   )
@@ -91,7 +96,11 @@ export function SteadyStates({ card, subject, at, states, exact, headingId }: St
         {subject.control.unit && ` ${subject.control.unit}`}
       </h3>
       {listed.length === 0 ? (
-        <p className="py-2 text-note text-ink-2">None in the ranges of the states.</p>
+        <p className="py-2 text-note text-ink-2">
+          {computed || inRange(at, subject)
+            ? 'None in the ranges of the states.'
+            : 'Outside the range that was swept: not computed.'}
+        </p>
       ) : (
         <Table caption="Steady states at the running point" className="mt-1">
           <TableHead columns={['Steady state', 'Kind', `Eigenvalues, ${rateUnit(subject)}`]} />
@@ -115,7 +124,7 @@ export function SteadyStates({ card, subject, at, states, exact, headingId }: St
           </tbody>
         </Table>
       )}
-      <p className="mt-1 text-label text-ink-2">{source}</p>
+      {(computed || listed.length > 0) && <p className="mt-1 text-label text-ink-2">{source}</p>}
     </section>
   )
 }

@@ -4,16 +4,7 @@ import { type VerdictKind, type VerdictWords, verdictWords } from '#shared/stabi
 import type { DescribedModel } from '#shared/stability/summary.ts'
 import { OnsetGlyph } from '#src/components/onset-glyph.tsx'
 import { classes } from '#src/lib/class-names.ts'
-import { glyphsOf, kindWords } from './geometry/verdict.ts'
-
-const hues: Record<VerdictKind, string> = {
-  hard: 'text-hard',
-  soft: 'text-soft',
-  undecided: 'text-open',
-  limit: 'text-ink',
-  none: 'text-ink',
-  unstable: 'text-ink',
-}
+import { glyphsOf, verdictHues as hues, kindWords } from './geometry/verdict.ts'
 
 export interface VerdictHeadProps {
   card: StabilityCard

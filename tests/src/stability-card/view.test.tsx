@@ -4,6 +4,7 @@ import type { StabilityCard } from '#shared/model/card-document.ts'
 import type { ModelDocument } from '#shared/model/document.ts'
 import { analyse } from '#shared/stability/card.ts'
 import { StabilityCardView, type StabilityCardViewProps } from '#src/features/stability-card/stability-card-view.tsx'
+import { VerdictBar } from '#src/features/stability-card/verdict-bar.tsx'
 import { bistable, calm, chain, lorenz, nowhere, wheelset } from '#tests/support/models.ts'
 import { empty, foldedCurve, type Made, onsetOf, straight } from './cards.ts'
 
@@ -118,6 +119,13 @@ describe('verdict and numbers', () => {
     expect(text).toContain('Read between computed points of the branches.')
   })
 
+  test('outside the swept range nothing is claimed', () => {
+    const text = words(markup(straight('hard'), { at: 90 }))
+    expect(text).toContain('outside the range that was swept')
+    expect(text).toContain('Outside the range that was swept: not computed.')
+    expect(text).not.toContain('None in the ranges of the states.')
+  })
+
   test('the value is offered to be set only to who may', () => {
     const set = { at: 50, onSetValue: () => undefined }
     expect(words(markup(straight('hard'), { ...set, mayEdit: true }))).toContain('Set as the page&#x27;s value')
@@ -156,6 +164,12 @@ describe('verdict and numbers', () => {
     const card = { ...warned.card, warnings: [{ code: 'not-smooth' as const, line: 3, message: 'abs has a kink.' }] }
     expect(words(markup({ ...warned, card }))).toContain('Line 3: abs has a kink.')
   })
+})
+
+test('the bar that stays in sight carries glyph and headline', () => {
+  const html = renderToStaticMarkup(<VerdictBar {...straight('soft')} />)
+  expect(words(html)).toContain('Soft onset at 58.00 m/s')
+  expect(html).toContain('text-soft')
 })
 
 describe('against an earlier revision', () => {

@@ -162,6 +162,20 @@ describe('a run that takes too long', () => {
     expect(runner.getState().failure).toBeNull()
   })
 
+  test('is given more time where the last run of the model took long', () => {
+    const { runner, port } = setUp({ patience: 400 })
+    runner.analyse(lag(1))
+    vi.advanceTimersByTime(600)
+    port(0).answer()
+    runner.analyse(lag(2))
+    runner.analyse(lag(3))
+    // Two and a half times 600 ms.
+    vi.advanceTimersByTime(1499)
+    expect(port(0).ended).toBe(false)
+    vi.advanceTimersByTime(2)
+    expect(port(0).ended).toBe(true)
+  })
+
   test('is left alone while nothing newer waits', () => {
     const { runner, port } = setUp({ patience: 400 })
     runner.analyse(lag(1))

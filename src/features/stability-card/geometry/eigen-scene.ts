@@ -165,14 +165,19 @@ export function eigenSceneOf(
   const crossings = onsets.flatMap(({ event, omega }) =>
     [1, -1].map((sign) => ({ event, at: at({ re: 0, im: sign * omega }) })),
   )
-  const lookNear = (place: Point | undefined): CardEvent['look'] => {
+  const eventNear = (place: Point | undefined): CardEvent | null => {
     const near = crossings
       .map((crossing) => ({
         crossing,
         gap: place ? Math.hypot(crossing.at.x - place.x, crossing.at.y - place.y) : 1e9,
       }))
       .sort((a, b) => a.gap - b.gap)[0]
-    return near && near.gap < 6 ? near.crossing.event.look : null
+    return near && near.gap < 6 ? near.crossing.event : null
+  }
+  // A stretch between two onsets takes the hue of the one that ends the steady running.
+  const lookOfStretch = (line: readonly Point[]): CardEvent['look'] => {
+    const ends = [eventNear(line[0]), eventNear(line.at(-1))]
+    return (ends.find((event) => event?.role === 'limit') ?? ends.find(Boolean))?.look ?? null
   }
   const paths = shown.flatMap((k) =>
     stretches(points, k, at).map(
@@ -180,7 +185,7 @@ export function eigenSceneOf(
         key: `${k}-${i}`,
         points: part.points,
         stable: part.stable,
-        look: part.stable ? null : (lookNear(part.points[0]) ?? lookNear(part.points.at(-1))),
+        look: part.stable ? null : lookOfStretch(part.points),
       }),
     ),
   )

@@ -13,6 +13,7 @@ import {
   safeSide,
   signedFigure,
 } from './figures.ts'
+import { inRange } from './running.ts'
 import type { StateAt } from './states-at.ts'
 import type { Subject } from './subject.ts'
 
@@ -104,7 +105,13 @@ export function growthReadout(state: StateAt | null, at: number, subject: Subjec
   const label = `Growth rate at ${controlFigure(at, subject)}`
   const { timeUnit } = subject
   if (!state || state.growth === null)
-    return { label, figure: 'none', unit: '', note: 'no steady state here', changed: false }
+    return {
+      label,
+      figure: 'none',
+      unit: '',
+      note: inRange(at, subject) ? 'no steady state here' : 'outside the range that was swept',
+      changed: false,
+    }
   const { growth } = state
   const time = growth === 0 ? '' : `${figure(Math.LN2 / Math.abs(growth))} ${timeUnit || 'time units'}`
   const note = growth === 0 ? 'neither grows nor dies out' : `${growth < 0 ? 'halves' : 'doubles'} in ${time}`

@@ -15,6 +15,9 @@ export function stepOf({ control }: Subject): number {
 
 export const withinRange = (p: number, { control }: Subject): number => Math.min(control.high, Math.max(control.low, p))
 
+/** True where the sweep reached `p`. */
+export const inRange = (p: number, { control }: Subject): boolean => p >= control.low && p <= control.high
+
 /** The value on the grid of steps that is nearest, so that a drag gives numbers people would type. */
 export function snapped(p: number, subject: Subject): number {
   const step = stepOf(subject)
@@ -92,8 +95,9 @@ export function runningWords(
 ): string {
   const value = withUnit(controlFigure(at, subject), subject.control.unit)
   const stable = states.filter((state) => state.stable).length
-  const standing =
-    states.length === 0
+  const standing = !inRange(at, subject)
+    ? 'outside the range that was swept'
+    : states.length === 0
       ? 'no steady state'
       : stable === 0
         ? 'no stable steady state'

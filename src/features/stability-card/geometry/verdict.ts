@@ -3,6 +3,16 @@ import type { VerdictKind } from '#shared/stability/sentences.ts'
 
 export type Glyph = 'hard' | 'soft' | 'undecided' | 'none'
 
+/** Hue of a kind, as a class: only soft, hard and undecided onsets have one. */
+export const verdictHues: Record<VerdictKind, string> = {
+  hard: 'text-hard',
+  soft: 'text-soft',
+  undecided: 'text-open',
+  limit: 'text-ink',
+  none: 'text-ink',
+  unstable: 'text-ink',
+}
+
 /** The word of a kind inside a sentence: "was soft". */
 export const kindWords: Record<VerdictKind, string> = {
   hard: 'hard',
