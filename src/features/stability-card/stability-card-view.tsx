@@ -54,10 +54,7 @@ export function StabilityCardView(props: StabilityCardViewProps) {
   const { document, card, state, errors = [], computedAt = null, trouble = null } = props
   const id = useId()
   return (
-    <section
-      aria-label="Stability card"
-      className="sheet @container grid min-w-0 content-start gap-4 p-4 tablet:p-5"
-    >
+    <section aria-label="Stability card" className="sheet @container grid min-w-0 content-start gap-4 p-4 tablet:p-5">
       {trouble && <p className="rounded-control border-[1.5px] border-ink px-3 py-2 text-note">{trouble}</p>}
       {errors.length > 0 && <FaultNote errors={errors} keeps={card && computedAt ? clockOf(computedAt) : null} />}
       {document && card ? (
