@@ -6,8 +6,11 @@ import { useConnectionState } from './use-draft-connection.ts'
 /** Saving, Saved or Offline: "Saved" only once the library has committed every edit of this tab. */
 export function SaveState({ connection }: { connection: DraftConnection }) {
   const state = useConnectionState(connection)
+  // Read out only where something is wrong: "Saving, Saved" after every key would drown everything else.
+  const calm =
+    state.phase === 'connecting' || state.phase === 'saved' || (state.phase === 'saving' && state.room !== 'not-saving')
   return (
-    <span role="status" className="inline-flex min-h-8 items-center gap-1.5 text-note text-ink-2">
+    <span aria-live={calm ? 'off' : 'polite'} className="inline-flex min-h-8 items-center gap-1.5 text-note text-ink-2">
       {state.phase === 'offline' && <Unplug aria-hidden className="size-4" />}
       {saveWords(state)}
     </span>
