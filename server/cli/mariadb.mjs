@@ -20,7 +20,7 @@ import os from 'node:os'
 import path from 'node:path'
 import { setTimeout as sleep } from 'node:timers/promises'
 import { databaseOwner, makeDataDirectory, makeSocketFolder } from './data-directory.mjs'
-import { findProgram } from './programs.mjs'
+import { findProgram, run } from './programs.mjs'
 
 const startDeadline = 90_000
 const stopDeadline = 60_000
@@ -77,7 +77,7 @@ function readCredentials(directory) {
 }
 
 /** Makes an empty database server's files, under another name until they are complete. */
-function install(data, owner) {
+async function install(data, owner) {
   const half = `${data}.new`
   rmSync(half, { recursive: true, force: true })
   mkdirSync(half)
@@ -90,8 +90,7 @@ function install(data, owner) {
     `--auth-root-socket-user=${os.userInfo().username}`,
     '--skip-test-db',
   ]
-  const made = spawnSync(findProgram('mariadb-install-db'), args, { encoding: 'utf8' })
-  if (made.status !== 0) throw new Error(`The database could not be prepared:\n${made.stderr || made.stdout}`)
+  await run(findProgram('mariadb-install-db'), args, { quiet: true })
   renameSync(half, data)
 }
 
@@ -189,7 +188,7 @@ export async function startMariadb({ directory, say = () => {}, throwaway = fals
 
   if (!existsSync(data)) {
     say('Preparing the database')
-    install(data, owner)
+    await install(data, owner)
   }
   let pid = leftRunning(pidFile, data)
   let port = Number(readText(portFile))

@@ -148,7 +148,12 @@ async function bringUp() {
   proceed()
   ready = true
   say('Ready')
-  for (const line of [...closing, '', `Brinkbook is at ${address}`, '(Ctrl-C stops it and keeps all data)']) {
+  for (const line of [
+    ...closing,
+    '',
+    `Brinkbook is at ${address}`,
+    `(Ctrl-C stops it; all data stay in ${directory})`,
+  ]) {
     console.log(line === '' ? '' : `  ${line}`)
   }
   console.log('')

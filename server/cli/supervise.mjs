@@ -1,6 +1,6 @@
 // Keeps the server running below npm start: starts it, answers a crash by a new start, stops it in order. Plain Node.
 import { spawn } from 'node:child_process'
-import { closeSync, copyFileSync, openSync, statSync, truncateSync, watch } from 'node:fs'
+import { closeSync, copyFileSync, openSync, readdirSync, statSync, truncateSync, watch } from 'node:fs'
 import path from 'node:path'
 import { cloneRoot } from './programs.mjs'
 
@@ -98,14 +98,21 @@ function watchFolders(say, onChange) {
   let timer = null
   let running = Promise.resolve()
   const changed = (_event, name) => {
-    if (!name || !/\.(ts|json|txt)$/.test(name) || /^cli\b/.test(name)) return
+    if (!name || !/\.(ts|json|txt)$/.test(name)) return
     clearTimeout(timer)
     timer = setTimeout(() => {
       say(`${name} changed; starting the server again`)
       running = running.then(onChange)
     }, 200)
   }
-  return ['server', 'collab', 'drizzle', 'shared'].map((folder) =>
-    watch(path.join(cloneRoot, folder), { recursive: true }, changed),
-  )
+  // Each folder by itself: editors save by renaming, which a watch of a single file does not survive.
+  const foldersBelow = (folder) =>
+    readdirSync(folder, { recursive: true, withFileTypes: true })
+      .filter((entry) => entry.isDirectory())
+      .map((entry) => path.join(entry.parentPath, entry.name))
+  return ['server', 'collab', 'drizzle', 'shared']
+    .map((name) => path.join(cloneRoot, name))
+    .flatMap((folder) => [folder, ...foldersBelow(folder)])
+    .filter((folder) => path.basename(folder) !== 'cli')
+    .map((folder) => watch(folder, changed))
 }
