@@ -55,6 +55,7 @@ export interface ConnectionDependencies {
   gone(connection: Connection): void
 }
 
+/** One socket, from its handshake to its end; see the top of this file. */
 export class Connection implements Member {
   readonly person: CollabPerson
   readonly pageId: number

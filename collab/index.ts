@@ -15,6 +15,7 @@ export type CollabEvent =
   | { kind: 'person-changed'; personId: number }
   | { kind: 'session-ended'; sessionHash: string }
 
+/** What the co-editing server is handed: it knows neither sessions nor the policy's data by itself. */
 export interface CollabOptions {
   db: Database
   /** Who holds the session of this request; null where nobody is signed in. Asked once, before the socket is accepted. */
@@ -37,6 +38,7 @@ export interface CollabOptions {
   draftSaved?: (pageId: number) => void
 }
 
+/** How the co-editing server is doing. */
 export interface CollabStats {
   rooms: number
   sockets: number
@@ -46,6 +48,7 @@ export interface CollabStats {
   notSaving: number
 }
 
+/** A running co-editing server. */
 export interface Collab {
   /** For /readyz and metrics. */
   stats(): CollabStats

@@ -48,6 +48,7 @@ export type Outcome = Judgement | 'full' | 'closed'
 const emptyStateVector = Uint8Array.of(0)
 const savedPause = 2000
 
+/** One page's draft in memory, its sockets, and its way into the database. */
 export class Room {
   readonly pageId: number
   readonly members = new Set<Member>()
@@ -349,6 +350,7 @@ export class Room {
     this.queue.stop()
     this.presence.stop()
     for (const timer of [this.idleTimer, this.broadcastTimer, this.savedTimer]) if (timer) clearTimeout(timer)
+    if (this.savedTimer) this.dependencies.draftSaved?.(this.pageId)
     this.forget(this, false)
     for (const member of [...this.members]) member.close(code)
     this.members.clear()

@@ -9,6 +9,7 @@ import type { DraftContent } from '../model/draft.ts'
 export const shapeVersion = '1'
 export const rootNames = ['equations', 'parameters', 'states', 'settings'] as const
 
+/** Cells of a row of either table, and the settings; each a string. */
 export const parameterCells = ['symbol', 'value', 'low', 'high', 'unit', 'meaning', 'uncertainty'] as const
 export const stateCells = ['symbol', 'low', 'high', 'start', 'unit', 'meaning'] as const
 export const settingKeys = [
