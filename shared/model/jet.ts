@@ -378,7 +378,7 @@ function scaled(t: Float64Array, r: number, x: number, factor: number, order: nu
 function branch(t: Float64Array, r: number, x: number, y: number, test: number, order: number): void {
   for (let k = 1; k <= order; k++) {
     const [p, q] = [t[x + k] as number, t[y + k] as number]
-    t[r + k] = test > 0 ? p : test < 0 ? q : 0.5 * (p + q)
+    t[r + k] = test > 0 ? p : test < 0 ? q : test === 0 ? 0.5 * (p + q) : Number.NaN
   }
 }
 

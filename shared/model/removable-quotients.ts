@@ -264,7 +264,7 @@ function takeShare(
     if (leaves.length > 8) return null
   }
   if (leaves.length < 2) return null
-  for (const leaf of leaves) {
+  for (const [at, leaf] of leaves.entries()) {
     if (builder.varies[leaf] === 0) continue
     const part: Monomial = { coefficient: 1, factors: new Map() }
     if (!monomial(builder, leaf, 1, part) || part.factors.has(key)) continue
@@ -273,7 +273,7 @@ function takeShare(
       power > 0 ? (all.factors.get(name)?.power ?? 0) >= power : builder.varies[node] === 0,
     )
     if (!fits) continue
-    const rest = leaves.filter((other) => other !== leaf).reduce((sum, other) => builder.add(sum, other))
+    const rest = leaves.filter((_, other) => other !== at).reduce((sum, other) => builder.add(sum, other))
     take(all, part, 1)
     all.coefficient *= factor.scale
     all.factors.delete(key)

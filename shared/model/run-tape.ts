@@ -150,7 +150,7 @@ export function runFrom(tape: Tape, r: Float64Array, start: number): void {
         // select
         const positive = r[b[i] as number] as number
         const negative = r[c[i] as number] as number
-        value = x > 0 ? positive : x < 0 ? negative : 0.5 * (positive + negative)
+        value = x > 0 ? positive : x < 0 ? negative : x === 0 ? 0.5 * (positive + negative) : Number.NaN
         break
       }
       case 31: // jump
