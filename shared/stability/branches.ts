@@ -25,11 +25,13 @@ export interface BranchSet {
   readonly branchPoints: BranchPoint[]
   /** Points at which a whole line of steady states stands at one control value: such a line is no branch. */
   readonly lines: Float64Array[]
+  /** Steady states through which no branch could be followed: F_x and F_p are of too low rank there. */
+  readonly unfollowed: Float64Array[]
 }
 
 /** An empty set. */
 export function createBranchSet(): BranchSet {
-  return { paths: [], branchPoints: [], lines: [] }
+  return { paths: [], branchPoints: [], lines: [], unfollowed: [] }
 }
 
 /**
@@ -44,7 +46,10 @@ export function growBranches(frame: Frame, forms: Forms, set: BranchSet, starts:
     const t = firstTangent(frame, z)
     const sample = t && sampleAt(frame, z, t)
     // on a branch point itself no walk can set out: the branches through it are found from other values
-    if (!sample || frame.bordered.smallestPivot < 1e-9) continue
+    if (!sample || frame.bordered.smallestPivot < 1e-9) {
+      set.unfollowed.push(z)
+      continue
+    }
     const start: Vertex = { sample, mark: null }
     const up = walk(frame, forms, start)
     const down = up.end.kind === 'closed' ? null : walk(frame, forms, reversed(start))

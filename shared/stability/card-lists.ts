@@ -44,15 +44,16 @@ function cleanedControl(frame: Frame, z: Float64Array): number {
 /** Steady states at the own value, sorted by the observed value, then by the states in document order. */
 export function listSteadyStates(frame: Frame, found: SteadyStateResult): ListedState[] {
   const listed: (ListedState & { observed: number })[] = []
-  for (const { x, residual } of found.states) {
+  for (const { x, residual, multiple } of found.states) {
     const z = scaled(frame, x, frame.own)
     if (!linearise(frame, z)) continue
     const spectrum = spectrumHere(frame)
     if (!spectrum) continue
-    const kind = kindOf(spectrum, frame.jacobian)
+    // at a multiple one the zero eigenvalue is known to half the digits only: the search's own test is the better one
+    const kind = multiple ? 'degenerate' : kindOf(spectrum, frame.jacobian)
     const observed = observedAt(frame, z)
     const eigenvalues = eigenvalueList(spectrum)
-    const card = { state: stateRecord(frame, x), eigenvalues, stable: isStable(spectrum), kind, residual }
+    const card = { state: stateRecord(frame, x), eigenvalues, stable: !multiple && isStable(spectrum), kind, residual }
     listed.push({ card, x, spectrum, observed })
   }
   const widths = frame.model.system.states.map(({ low, high }) => high - low)
@@ -190,7 +191,7 @@ export function listHopf(
   const listed = kept.map(({ point, path, p }, index): ListedHopf => {
     const { silent: _silent, degenerateBy: _by, ...judged } = judgements[index] as HopfJudgement
     const state = stateRecord(frame, stateOf(frame, point.sample.z))
-    const card: HopfPoint = { p, state, branch: path.id, ...judged, secondLyapunov: null, proved: false }
+    const card: HopfPoint = { p, state, branch: path.id, ...judged, proved: false }
     return { point, card, path, index }
   })
   return { listed, judgements }

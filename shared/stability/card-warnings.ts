@@ -1,6 +1,6 @@
 import type { CardPart, CardWarning } from '#shared/model/card-document.ts'
 import type { Expression, ModelSystem } from '#shared/model/expression.ts'
-import type { BranchSet } from './branches.ts'
+import { type BranchSet, findOnPaths } from './branches.ts'
 import { controlOf, type Frame, stateOf } from './frame.ts'
 import type { SteadyStateResult } from './steady-states.ts'
 import type { HopfJudgement } from './verdict.ts'
@@ -132,6 +132,13 @@ export function warnOfBranches(frame: Frame, set: BranchSet, warnings: WarningLi
   for (const z of set.lines) {
     const message = `A whole line of steady states stands at ${symbolOfControl(frame)} = ${fourDigits(controlOf(frame, z))}.`
     warnings.add({ code: 'continuum-of-steady-states', message })
+  }
+  // one that lies on a branch found from another value is not missing
+  const missing = set.unfollowed.find((z) => findOnPaths(frame, set.paths, z) === null)
+  if (missing) {
+    const place = placeText(system, controlOf(frame, missing), stateOf(frame, missing))
+    const message = `The steady state at ${place} is a multiple one: no branch could be followed through it.`
+    warnings.add({ code: 'budget-spent', message })
   }
   if (frame.budget.spent()) warnOfSpentBudget(warnings)
 }

@@ -16,6 +16,8 @@ export interface OnsetForms {
   readonly scale: Float64Array
   bilinear(a: Float64Array, b: Float64Array): Float64Array
   trilinear(a: Float64Array, b: Float64Array, c: Float64Array): Float64Array
+  /** B(w, w), C(w, w, w), D(w, ...) and E(w, ...) at positions 2 to 5 of the result, from one jet of order 5. */
+  powers(w: Float64Array): Float64Array[]
   /** B(w, d), C(w, w, d) and D(w, w, w, d) in one pass. */
   alongWith(w: Float64Array, d: Float64Array): { second: Float64Array; third: Float64Array; fourth: Float64Array }
 }
@@ -31,7 +33,7 @@ export function createOnsetForms(frame: Frame, z: Float64Array): OnsetForms {
   })
   const u = new Float64Array(n)
   const w = new Float64Array(m)
-  const jet = new Float64Array(5 * n)
+  const jet = new Float64Array(6 * n)
 
   /** Taylor coefficients of the scaled F along e: entry k n + i is the k-th of component i. */
   function along(e: Float64Array, order: number): Float64Array {
@@ -73,7 +75,7 @@ export function createOnsetForms(frame: Frame, z: Float64Array): OnsetForms {
       Float64Array,
       Float64Array,
     ]
-    const back = (sizes.reduce((product, size) => product * size, 1) * 1) / 4
+    const back = sizes.reduce((product, size) => product * size, 1) / 4
     for (const e2 of [1, -1]) {
       for (const e3 of [1, -1]) {
         const values = along(combine(combine(first, second, e2), third, e3), 3)
@@ -87,6 +89,11 @@ export function createOnsetForms(frame: Frame, z: Float64Array): OnsetForms {
     scale,
     bilinear,
     trilinear,
+    powers(direction) {
+      const values = along(direction, 5)
+      const factorial = [1, 1, 2, 6, 24, 120]
+      return factorial.map((factor, k) => values.slice(k * n, (k + 1) * n).map((value) => factor * value))
+    },
     alongWith(direction, d) {
       const [sizeW, sizeD] = [sizeOf(direction), sizeOf(d)]
       const zero = () => new Float64Array(n)

@@ -1,29 +1,26 @@
 import type { StabilityCard } from '#shared/model/card-document.ts'
-import {
-  createComplexLu,
-  factorComplexLu,
-  factorShifted,
-  solveComplexLu,
-  solveComplexLuAdjoint,
-} from '#shared/numerics/complex-solve.ts'
+import { createComplexLu, factorShifted, solveComplexLu } from '#shared/numerics/complex-solve.ts'
 import { createLu, factorLu, solveLu } from '#shared/numerics/linear-solve.ts'
+import { eigenvectorsAlong } from './eigenvector-derivatives.ts'
 import { type Frame, place } from './frame.ts'
 import { type CriticalPair, criticalPair } from './normal-form.ts'
 import { createOnsetForms, type OnsetForms } from './onset-forms.ts'
+import { type Tables, tablesOf } from './onset-tables.ts'
+import {
+  add,
+  addVector,
+  bilinearOf,
+  conjugate,
+  inner,
+  lifted,
+  realVector,
+  type Scalar,
+  type Vector,
+  widen,
+} from './onset-vectors.ts'
 import type { ListedHopf } from './window.ts'
 
 type Sensitivity = NonNullable<StabilityCard['sensitivity']>[number]
-
-/** Complex vector of n + m entries (states scaled, parameters) or of n entries. */
-interface Vector {
-  readonly re: Float64Array
-  readonly im: Float64Array
-}
-
-interface Scalar {
-  readonly re: number
-  readonly im: number
-}
 
 /** What one Hopf point's sensitivities share. */
 interface Setting {
@@ -39,9 +36,14 @@ interface Setting {
   /** -A⁻¹ F_p per unit of the control, and dλ/dp per unit of the control. */
   readonly byControl: Float64Array
   readonly rate: Scalar
+  readonly cubic: Vector
+  readonly first: Vector
+  readonly last: Vector
+  readonly tables: Tables
   readonly solveReal: (b: Float64Array) => Float64Array
   readonly solveSecond: (b: Vector) => Vector
-  readonly cubicTerm: Scalar
+  /** Re c1. */
+  readonly cubicTerm: number
 }
 
 /**
@@ -80,40 +82,6 @@ export function sensitivitiesOf(frame: Frame, hopf: ListedHopf): Sensitivity[] {
   return entries
 }
 
-const add = (a: Float64Array, b: Float64Array, s = 1): Float64Array => a.map((value, i) => value + s * (b[i] as number))
-
-/** Real n-vector as a direction of n + m entries. */
-function lifted(v: Float64Array, m: number): Float64Array {
-  const wide = new Float64Array(v.length + m)
-  wide.set(v)
-  return wide
-}
-
-function inner(p: Vector, v: Vector): Scalar {
-  let re = 0
-  let im = 0
-  for (let i = 0; i < v.re.length; i++) {
-    const [a, b] = [p.re[i] as number, p.im[i] as number]
-    const [c, d] = [v.re[i] as number, v.im[i] as number]
-    re += a * c + b * d
-    im += a * d - b * c
-  }
-  return { re, im }
-}
-
-/** B(a, b) for complex a and real or complex b, by its real parts. */
-function bilinearOf(forms: OnsetForms, a: Vector, b: Vector): Vector {
-  const rr = forms.bilinear(a.re, b.re)
-  const ii = forms.bilinear(a.im, b.im)
-  const ri = forms.bilinear(a.re, b.im)
-  const ir = forms.bilinear(a.im, b.re)
-  return { re: add(rr, ii, -1), im: add(ri, ir) }
-}
-
-const conjugate = (v: Vector): Vector => ({ re: v.re, im: v.im.map((value) => -value) })
-const realVector = (re: Float64Array): Vector => ({ re, im: new Float64Array(re.length) })
-const widen = (v: Vector, m: number): Vector => ({ re: lifted(v.re, m), im: lifted(v.im, m) })
-
 function settingOf(frame: Frame, hopf: ListedHopf): Setting | null {
   const { n } = frame
   const { m } = frame.model
@@ -140,18 +108,15 @@ function settingOf(frame: Frame, hopf: ListedHopf): Setting | null {
   const { bqq, bqBar, cubic } = formsOfPair(base)
   const mean = solveReal(bqBar)
   const second = solveSecond(bqq)
-  const first = inner(p, bilinearOf(forms, q, realVector(lifted(mean, m))))
-  const last = inner(p, bilinearOf(forms, conjugate(q), widen(second, m)))
-  const third = inner(p, cubic)
-  const cubicTerm = {
-    re: 0.5 * (third.re - 2 * first.re + last.re),
-    im: 0.5 * (third.im - 2 * first.im + last.im),
-  }
+  const first = bilinearOf(forms, q, realVector(lifted(mean, m)))
+  const last = bilinearOf(forms, conjugate(q), widen(second, m))
+  const cubicTerm = 0.5 * (inner(p, cubic).re - 2 * inner(p, first).re + inner(p, last).re)
   const byControl = responseTo(frame, z, frame.control, forms, solveReal)
   const direction = lifted(byControl, m)
   direction[n + frame.control] = 1
   const rate = inner(p, bilinearOf(forms, realVector(direction), q))
-  return { ...base, mean, second, byControl, rate, cubicTerm }
+  const tables = tablesOf(forms, n, q, mean, second)
+  return { ...base, mean, second, byControl, rate, cubicTerm, cubic, first, last, tables }
 }
 
 /** -A⁻¹ F_θ for parameter k, per unit of its entry. */
@@ -205,11 +170,9 @@ function alongOnset(setting: Setting, k: number): { control: number; omega: numb
 function cubicAlong(setting: Setting, d: Float64Array, omega: number): number {
   const { frame, forms, pair, p, q, mean, second, solveReal, solveSecond } = setting
   const { m } = frame.model
-  const wideMean = realVector(lifted(mean, m))
+  const wideMean = lifted(mean, m)
   const wideSecond = widen(second, m)
-  const direction = realVector(d)
   const vectors = eigenvectorsAlong(setting, d, omega)
-  const dq = widen(vectors.q, m)
 
   // B(d,q), C(d,q,q), C(d,q,q̄), D(d,q,q,q̄) from jets along u, v, u + v, u - v
   const u = forms.alongWith(q.re, d)
@@ -228,12 +191,13 @@ function cubicAlong(setting: Setting, d: Float64Array, omega: number): number {
   }
   const cdqBar = add(u.third, v.third)
 
+  const { bU, bV, bMean, bSecondRe, bSecondIm } = setting.tables
+  const { re: a, im: b } = vectors.q
   // mean' : A m' = C(d,q,q̄) + 2 Re B(q',q̄) - B(d,m)
-  const bqBar = bilinearOf(forms, dq, conjugate(q))
-  const meanAlong = solveReal(add(add(cdqBar, bqBar.re, 2), forms.bilinear(d, wideMean.re), -1))
+  const meanAlong = solveReal(add(add(cdqBar, add(bU(a), bV(b)), 2), forms.bilinear(d, wideMean), -1))
   // second' : (2iω - A) s' = C(d,q,q) + 2 B(q,q') + B(d,s) - 2iω' s
-  const bqq = bilinearOf(forms, q, dq)
-  const bds = bilinearOf(forms, direction, wideSecond)
+  const bqq = { re: add(bU(a), bV(b), -1), im: add(bU(b), bV(a)) }
+  const bds = bilinearOf(forms, realVector(d), wideSecond)
   const secondAlong = solveSecond({
     re: cdqq.re.map(
       (x, i) => x + 2 * (bqq.re[i] as number) + (bds.re[i] as number) + 2 * omega * (second.im[i] as number),
@@ -243,36 +207,30 @@ function cubicAlong(setting: Setting, d: Float64Array, omega: number): number {
     ),
   })
 
-  const { cubic } = formsOfPair(setting)
-  const cubicAlongD = addVector(fourth, cubicWith(forms, q, dq))
-  const first = bilinearOf(forms, q, wideMean)
-  const firstAlong = addVector(
-    addVector(trilinearWithReal(forms, d, q, wideMean.re), bilinearOf(forms, dq, wideMean)),
-    bilinearOf(forms, q, realVector(lifted(meanAlong, m))),
-  )
-  const last = bilinearOf(forms, conjugate(q), wideSecond)
-  const lastAlong = addVector(
-    addVector(trilinearWith(forms, d, conjugate(q), wideSecond), bilinearOf(forms, conjugate(dq), wideSecond)),
-    bilinearOf(forms, conjugate(q), widen(secondAlong, m)),
-  )
+  const cubicAlongD = addVector(fourth, cubicWith(setting.tables, vectors.q))
+  const firstAlong = addVector(trilinearWithReal(forms, d, q, wideMean), {
+    re: add(bMean(a), bU(meanAlong)),
+    im: add(bMean(b), bV(meanAlong)),
+  })
+  const lastAlong = addVector(trilinearWith(forms, d, conjugate(q), wideSecond), {
+    re: add(add(bSecondRe(a), bSecondIm(b)), add(bU(secondAlong.re), bV(secondAlong.im))),
+    im: add(add(bSecondIm(a), bSecondRe(b), -1), add(bU(secondAlong.im), bV(secondAlong.re), -1)),
+  })
   const total = (vector: Vector, cube: Vector, one: Vector, two: Vector): number =>
     0.5 * (inner(vector, cube).re - 2 * inner(vector, one).re + inner(vector, two).re)
-  const c1 = total(vectors.p, cubic, first, last) + total(p, cubicAlongD, firstAlong, lastAlong)
+  const c1 = total(vectors.p, setting.cubic, setting.first, setting.last) + total(p, cubicAlongD, firstAlong, lastAlong)
 
   const k = pair.observed
   const dk = observedAlong(setting, d, vectors.q)
   const size = k.re * k.re + k.im * k.im
   const sizeAlong = 2 * (k.re * dk.re + k.im * dk.im)
-  return (c1 - (setting.cubicTerm.re * sizeAlong) / size) / (4 * size)
+  return (c1 - (setting.cubicTerm * sizeAlong) / size) / (4 * size)
 }
 
-const addVector = (a: Vector, b: Vector): Vector => ({ re: add(a.re, b.re), im: add(a.im, b.im) })
-
 /** 2 C(q',q,q̄) + C(q,q,q̄') with q = u + iv, q' = a + ib. */
-function cubicWith(forms: OnsetForms, q: Vector, dq: Vector): Vector {
-  const form = forms.trilinear
-  const [uua, vva, uva] = [form(q.re, q.re, dq.re), form(q.im, q.im, dq.re), form(q.re, q.im, dq.re)]
-  const [uub, vvb, uvb] = [form(q.re, q.re, dq.im), form(q.im, q.im, dq.im), form(q.re, q.im, dq.im)]
+function cubicWith({ cUU, cUV, cVV }: Tables, { re: a, im: b }: Vector): Vector {
+  const [uua, vva, uva] = [cUU(a), cVV(a), cUV(a)]
+  const [uub, vvb, uvb] = [cUU(b), cVV(b), cUV(b)]
   return {
     re: uua.map((x, i) => 3 * x + (vva[i] as number) + 2 * (uvb[i] as number)),
     im: uub.map((x, i) => x + 3 * (vvb[i] as number) + 2 * (uva[i] as number)),
@@ -287,64 +245,6 @@ function trilinearWith(forms: OnsetForms, d: Float64Array, a: Vector, b: Vector)
   const first = trilinearWithReal(forms, d, a, b.re)
   const second = trilinearWithReal(forms, d, a, b.im)
   return { re: add(first.re, second.im, -1), im: add(first.im, second.re) }
-}
-
-/**
- * Derivatives of q and p: (A - iω) q' = -(A' - iω') q with <p, q'> = 0, and (Aᵀ + iω) p' = -(A'ᵀ + iω') p with
- * <p', q> = 0. Solved with A - iω shifted by the rank-one term q pᴴ, which moves only the critical eigenvalue away.
- */
-function eigenvectorsAlong(setting: Setting, d: Float64Array, omega: number): { q: Vector; p: Vector } {
-  const { frame, forms, pair, p, q } = setting
-  const { n } = frame
-  const lu = createComplexLu(n)
-  const size = Math.max(pair.omega, 1e-300)
-  const [qRe, qIm] = [q.re, q.im]
-  const re = new Float64Array(n * n)
-  const im = new Float64Array(n * n)
-  for (let i = 0; i < n; i++) {
-    for (let j = 0; j < n; j++) {
-      const [a, b, c, e] = [qRe[i] as number, qIm[i] as number, p.re[j] as number, -(p.im[j] as number)]
-      re[i * n + j] = (pair.jacobian[i * n + j] as number) + size * (a * c - b * e)
-      im[i * n + j] = size * (a * e + b * c) - (i === j ? pair.omega : 0)
-    }
-  }
-  factorComplexLu(lu, re, im)
-  // right: -(A' q - iω' q), its part along q taken out
-  const moved = bilinearOf(forms, realVector(d), q)
-  const right = {
-    re: moved.re.map((x, i) => -x - omega * (qIm[i] as number)),
-    im: moved.im.map((x, i) => -x + omega * (qRe[i] as number)),
-  }
-  takeOut(right, p, { re: qRe.slice(0, n), im: qIm.slice(0, n) })
-  solveComplexLu(lu, right.re, right.im)
-  // left: component j of A'ᵀ p is <e_j-th column>: p paired with A' e_j
-  const left = { re: new Float64Array(n), im: new Float64Array(n) }
-  const axis = new Float64Array(d.length)
-  for (let j = 0; j < n; j++) {
-    axis.fill(0)
-    axis[j] = 1
-    const column = forms.bilinear(d, axis)
-    let [sr, si] = [0, 0]
-    for (let i = 0; i < n; i++) {
-      sr += (column[i] as number) * (p.re[i] as number)
-      si += (column[i] as number) * (p.im[i] as number)
-    }
-    left.re[j] = -sr + omega * (p.im[j] as number)
-    left.im[j] = -si - omega * (p.re[j] as number)
-  }
-  takeOut(left, { re: qRe.slice(0, n), im: qIm.slice(0, n) }, p)
-  solveComplexLuAdjoint(lu, left.re, left.im)
-  return { q: right, p: left }
-}
-
-/** v minus <along, v> times `by`, where <along, by> = 1. */
-function takeOut(v: Vector, along: Vector, by: Vector): void {
-  const part = inner(along, v)
-  for (let i = 0; i < v.re.length; i++) {
-    const [a, b] = [by.re[i] as number, by.im[i] as number]
-    v.re[i] = (v.re[i] as number) - (part.re * a - part.im * b)
-    v.im[i] = (v.im[i] as number) - (part.re * b + part.im * a)
-  }
 }
 
 /** Derivative of the observed component of q: gradient times q', and for a helper the gradient's own change times q. */

@@ -6,6 +6,7 @@ import type { Forms } from './forms.ts'
 import { controlOf, type Frame, place } from './frame.ts'
 import type { BranchHopf } from './hopf.ts'
 import { type CriticalPair, criticalPair, cubicTerm, eigenvalueRate } from './normal-form.ts'
+import { secondLyapunov } from './second-lyapunov.ts'
 import { isStable, onAxis, type Spectrum } from './spectrum.ts'
 
 /** What a card says of a Hopf point, without where it lies. All in the model's units, see the card's conventions. */
@@ -22,6 +23,7 @@ export type HopfJudgement = Pick<
   | 'operating'
   | 'cycleSide'
   | 'amplitudeCoefficient'
+  | 'secondLyapunov'
 > & {
   /** The observed quantity does not move to first order. */
   silent: boolean
@@ -47,6 +49,7 @@ export function judgeHopf(frame: Frame, forms: Forms, point: BranchHopf): HopfJu
     shift: null,
     cycleSide: null,
     amplitudeCoefficient: null,
+    secondLyapunov: null,
   }
   const pair = criticalPair(frame, point)
   const crossing = crossingOf(frame, forms, point, pair)
@@ -60,8 +63,10 @@ export function judgeHopf(frame: Frame, forms: Forms, point: BranchHopf): HopfJu
   const moved = 4 * (pair.observed.re ** 2 + pair.observed.im ** 2)
   const silent = Math.sqrt(moved) <= 1e-9 * pair.observedReach || moved === 0
   const verdict = verdictOf(pair, c1, term.error, silent ? null : moved, others)
+  const second = verdict.by === 'cubic' ? secondLyapunov(frame, point, pair) : null
   if (silent) {
-    return { ...base, ...nothing, crossing, firstLyapunov, silent, verdict: verdict.verdict, degenerateBy: verdict.by }
+    const told = { firstLyapunov, secondLyapunov: second, verdict: verdict.verdict, degenerateBy: verdict.by }
+    return { ...base, ...nothing, crossing, ...told, silent }
   }
   const cubic = c1.re / moved
   const decided = verdict.verdict === 'soft' || verdict.verdict === 'hard'
@@ -77,6 +82,7 @@ export function judgeHopf(frame: Frame, forms: Forms, point: BranchHopf): HopfJu
     degenerateBy: verdict.by,
     cycleSide: decided && ratio !== 0 ? (ratio < 0 ? 'above' : 'below') : null,
     amplitudeCoefficient: decided && Number.isFinite(ratio) ? Math.sqrt(Math.abs(ratio)) : null,
+    secondLyapunov: second,
     silent,
   }
 }

@@ -224,3 +224,47 @@ test('the crossing rate is the total derivative: the steady state moves with the
   expect(point.p).toBeCloseTo(1, 12)
   expect(point.crossing).toBeCloseTo(1, 12)
 })
+
+describe('the second Lyapunov coefficient, where the first is zero', () => {
+  test("x' = -y + mu x - x r⁴, y' = x + mu y - y r⁴ has l2 = -4 (|z| = r/sqrt 2 for <q,q> = 1)", () => {
+    const card = cardOf({
+      ...normalForm,
+      equations: 'q4 = (x^2+y^2)^2\ndx/dt = mu*x - y - x*q4\ndy/dt = x + mu*y - y*q4',
+    })
+    expect(card.hopf?.[0]?.secondLyapunov).toBeCloseTo(-4, 12)
+    expect(only(normalForm).secondLyapunov).toBeNull()
+  })
+
+  test('the nerve model of FitzHugh 1961 at its changeover b = (1 - sqrt(1 - eps))/eps', () => {
+    // value computed apart from this project, homological equation at 50 digits, and from small cycles
+    const eps = 0.08
+    const card = cardOf({
+      equations: 'dv/dt = v - v^3/3 - w + I\ndw/dt = eps*(v + a - b*w)',
+      control: { I: [0, -0.5, 3] },
+      parameters: { eps, a: 0.7, b: (1 - Math.sqrt(1 - eps)) / eps },
+      states: { v: [-3, 3, -1], w: [-2, 5, -0.5] },
+      observed: 'v',
+    })
+    expect(card.hopf?.map(({ verdict }) => verdict)).toEqual(['degenerate', 'degenerate'])
+    expect(card.hopf?.[0]?.p).toBeCloseTo(0.11891101275944907, 12)
+    expect(card.hopf?.[0]?.secondLyapunov).toBeCloseTo(-0.8871249174759299, 9)
+  })
+
+  test('does not depend on the linear coordinates but for <q,q>: c2 / |q_x|⁴ stays', () => {
+    // x and y stretched by s and 1: l2 <q,q>² / |q_x|⁴ is the coefficient of x's own amplitude
+    const stretched = (s: number) => {
+      const card = cardOf({
+        ...normalForm,
+        equations:
+          'x = X/s\nq2 = x^2+y^2\ndX/dt = s*(mu*x - y - x*q2^2 + 0.3*x^2 + 0.2*c*x*q2)\ndy/dt = x + mu*y - y*q2^2 + 0.2*c*y*q2',
+        parameters: { s, c: 0 },
+        states: { X: [-2 * s, 2 * s], y: [-2, 2] },
+        observed: 'x',
+      })
+      const point = card.hopf?.find(({ p, state }) => Math.abs(p) < 1e-9 && Math.abs(state['X'] ?? 1) < 1e-9)
+      // q = (s, ∓i)/sqrt(s² + 1) in (X, y): q_x = 1/sqrt(s² + 1)
+      return (point?.secondLyapunov ?? Number.NaN) * (s * s + 1) ** 2
+    }
+    expect(stretched(7) / stretched(1)).toBeCloseTo(1, 8)
+  })
+})
