@@ -82,10 +82,10 @@ describe('branch points', () => {
   test('a pitchfork below with folds further on: mu = x⁴ - x² turns at -1/4', () => {
     const card = cardOf(line('mu*x + x^3 - x^5'))
     expect(card.branchPoints).toMatchObject([{ kind: 'pitchfork' }])
-    expect(card.folds?.map(({ state }) => (state['x'] ?? 0) ** 2)).toHaveLength(2)
+    expect(card.folds?.map(({ state }) => (state.x ?? 0) ** 2)).toHaveLength(2)
     for (const fold of card.folds ?? []) {
       expect(fold.p).toBeCloseTo(-0.25, 14)
-      expect((fold.state['x'] ?? 0) ** 2).toBeCloseTo(0.5, 12)
+      expect((fold.state.x ?? 0) ** 2).toBeCloseTo(0.5, 12)
     }
   })
 

@@ -59,7 +59,7 @@ describe('conventions', () => {
           states: { x: [-0.05, 0.05], y: [-0.05, 0.05] },
           observed: 'x',
         })
-        const point = card.hopf?.find(({ p, state }) => Math.abs(p) < 1e-9 && Math.abs(state['x'] ?? 1) < 1e-9)
+        const point = card.hopf?.find(({ p, state }) => Math.abs(p) < 1e-9 && Math.abs(state.x ?? 1) < 1e-9)
         expect(point?.cubic).toBeCloseTo(a, 10)
       }),
       { numRuns: 40, seed: 4 },
@@ -261,7 +261,7 @@ describe('the second Lyapunov coefficient, where the first is zero', () => {
         states: { X: [-2 * s, 2 * s], y: [-2, 2] },
         observed: 'x',
       })
-      const point = card.hopf?.find(({ p, state }) => Math.abs(p) < 1e-9 && Math.abs(state['X'] ?? 1) < 1e-9)
+      const point = card.hopf?.find(({ p, state }) => Math.abs(p) < 1e-9 && Math.abs(state.X ?? 1) < 1e-9)
       // q = (s, ∓i)/sqrt(s² + 1) in (X, y): q_x = 1/sqrt(s² + 1)
       return (point?.secondLyapunov ?? Number.NaN) * (s * s + 1) ** 2
     }

@@ -5,7 +5,7 @@ import { documentOf, normalForm, type ShortModel } from './documents.ts'
 
 function words(model: ShortModel, extra: Record<string, unknown> = {}) {
   const base = documentOf(model)
-  const unit = extra['unit']
+  const unit = extra.unit
   const [control, ...others] = base.parameters
   const parameters = unit === undefined ? base.parameters : [{ ...control, unit }, ...others]
   const { unit: _unit, ...rest } = extra
