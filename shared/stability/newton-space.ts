@@ -58,3 +58,12 @@ export function setRowScale(space: NewtonSpace): void {
     rowScale[i] = sum > 0 && Number.isFinite(sum) ? sum : 1
   }
 }
+
+/**
+ * The size that differences of coordinate j near `x` are judged by: its box width, or, in boxes more than a thousand times
+ * wider than the coordinate, that coordinate's own size.
+ */
+export function ownSize(space: NewtonSpace, x: Float64Array, j: number): number {
+  const width = space.width[j] as number
+  return Math.min(width, Math.max(Math.abs(x[j] as number), 1e-3 * width))
+}

@@ -89,8 +89,8 @@ const cutAt = 0.4871
 
 /**
  * Searches the box [low, high] at the parameters `p`. `effort` bounds the interval operations, `shouldStop` is asked
- * now and then. `judge` is shown each place that cannot be decided and answers how far around it, as a share of its own
- * size, boxes are not looked into any more; null ends the search (a continuum would spend the whole budget).
+ * now and then. `judge` is shown each place that cannot be decided and answers how far around it (in each state) boxes
+ * are not looked into any more; null ends the search (a continuum would spend the whole budget).
  */
 export function searchBox(
   space: SearchSpace,
@@ -99,7 +99,7 @@ export function searchBox(
   high: Float64Array,
   effort: number,
   shouldStop: (() => boolean) | undefined,
-  judge: (middle: Float64Array) => number | null,
+  judge: (middle: Float64Array) => Float64Array | null,
 ): SearchResult {
   const { model, newton, system, interval } = space
   const { n } = model
@@ -127,9 +127,12 @@ export function searchBox(
     if (outcome === 'done') continue
     if (isSmall(xlo, xhi)) {
       for (let j = 0; j < n; j++) point[j] = ((xlo[j] as number) + (xhi[j] as number)) / 2
-      const share = judge(point)
-      if (share !== null) noteUndecided(result, point, xlo, xhi, width, share)
-      if (share === null || result.undecided.length >= mostUndecided) {
+      const reach = judge(point)
+      if (reach !== null) {
+        const radius = reach.map((r, j) => Math.max(r, 2 * ((xhi[j] as number) - (xlo[j] as number))))
+        result.undecided.push({ middle: point.slice(), radius })
+      }
+      if (reach === null || result.undecided.length >= mostUndecided) {
         result.finished = false
         break
       }
@@ -263,22 +266,6 @@ function liesIn(xlo: Float64Array, xhi: Float64Array, middle: Float64Array, radi
     if ((xhi[j] as number) > (middle[j] as number) + (radius[j] as number)) return false
   }
   return true
-}
-
-/** Adds a small box as a place of its own; its size is that of its coordinates, at least a thousandth of the box. */
-function noteUndecided(
-  result: SearchResult,
-  middle: Float64Array,
-  xlo: Float64Array,
-  xhi: Float64Array,
-  width: Float64Array,
-  share: number,
-): void {
-  const radius = width.map((w, j) => {
-    const size = Math.min(w, Math.max(Math.abs(middle[j] as number), 1e-3 * w))
-    return Math.max(share * size, 2 * ((xhi[j] as number) - (xlo[j] as number)))
-  })
-  result.undecided.push({ middle: middle.slice(), radius })
 }
 
 function largestMiddles(stack: Float64Array[], n: number, width: Float64Array): Float64Array[] {

@@ -168,35 +168,51 @@ function reducedExpansion(
   return coefficients.every(Number.isFinite) && allFinite(x) ? { coefficients, direction: x1 } : null
 }
 
+/** What polishing a multiple zero went for. */
+export interface MultipleZero {
+  multiplicity: 2 | 3
+  /**
+   * How far from the zero (each coordinate) F stays below `noise`, in units of its rows' sizes, along the null direction:
+   * within that distance rounding hides whether F vanishes.
+   */
+  blurredBy(noise: number): Float64Array
+}
+
 /**
  * Moves an approximate multiple zero (one null direction) to where the reduced function's first or second derivative
- * vanishes. Leaves x as it is where that does not converge or leads away. Returns the multiplicity it went for, 2 or 3.
+ * vanishes. Leaves x as it is where that does not converge or leads away; null where there is no such expansion.
  */
-export function polishMultiple(space: NewtonSpace, p: Float64Array, x: Float64Array): 2 | 3 {
+export function polishMultiple(space: NewtonSpace, p: Float64Array, x: Float64Array): MultipleZero | null {
   const { n, width } = space
   const y = x.slice()
   let last = Number.POSITIVE_INFINITY
-  let multiplicity: 2 | 3 = 2
+  let result: MultipleZero | null = null
   for (let round = 0; round < 12; round++) {
     const s = scaledDecomposition(space, p, y)
-    if (s === null) return multiplicity
-    const reduced = reducedExpansion(space, p, y, s)
-    if (reduced === null) return multiplicity
+    const reduced = s === null ? null : reducedExpansion(space, p, y, s)
+    if (reduced === null) return result
     const [a1, a2, a3] = reduced.coefficients
-    multiplicity = Math.abs(a2) > 1e-3 * Math.abs(a3) ? 2 : 3
+    const multiplicity = Math.abs(a2) > 1e-3 * Math.abs(a3) ? 2 : 3
+    const leading = Math.abs(multiplicity === 2 ? a2 : a3)
+    const { direction } = reduced
+    result = {
+      multiplicity,
+      blurredBy: (noise) => direction.map((d) => Math.abs(d) * Math.min((noise / leading) ** (1 / multiplicity), 1e-3)),
+    }
     const shift = multiplicity === 2 ? -a1 / (2 * a2) : -a2 / (3 * a3)
-    if (!Number.isFinite(shift) || Math.abs(shift) > 0.01) return multiplicity
-    for (let k = 0; k < n; k++) y[k] = (y[k] as number) + shift * (reduced.direction[k] as number)
+    if (!Number.isFinite(shift) || Math.abs(shift) > 0.01) return result
+    for (let k = 0; k < n; k++) y[k] = (y[k] as number) + shift * (direction[k] as number)
     const size = Math.abs(shift)
     if (size < 1e-15 || size >= 0.5 * last) break
     last = size
   }
-  if (!allFinite(y)) return multiplicity
+  if (!allFinite(y)) return result
   let moved = 0
-  for (let k = 0; k < n; k++)
+  for (let k = 0; k < n; k++) {
     moved = Math.max(moved, Math.abs((y[k] as number) - (x[k] as number)) / (width[k] as number))
+  }
   if (moved < 1e-3) x.set(y)
-  return multiplicity
+  return result
 }
 
 /** Minimum-norm Newton step -J⁺ F in box widths, for exactly singular Jacobians; null where not finite. */

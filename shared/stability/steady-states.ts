@@ -7,7 +7,7 @@
  */
 
 import { proveNear } from '#shared/numerics/krawczyk.ts'
-import { allFinite, createNewtonSpace, largest, type NewtonSpace } from './newton-space.ts'
+import { allFinite, createNewtonSpace, largest, type NewtonSpace, ownSize } from './newton-space.ts'
 import { approach, polish, snapToZero } from './steady-newton.ts'
 import type { SearchableModel } from './steady-search.ts'
 import {
@@ -97,9 +97,9 @@ export function findSteadyStates(
   }
   let found: SearchResult = { zeros: [], undecided: [], left: [], finished: false, boxes: 0 }
   if (!list.continuum) {
-    const judge = (middle: Float64Array): number | null => {
-      const multiplicity = list.addUndecided(middle)
-      return list.continuum ? null : multiplicity === 3 ? 1e-4 : multiplicity === 2 ? 1e-6 : 1e-8
+    const judge = (middle: Float64Array): Float64Array | null => {
+      const reach = list.addUndecided(middle)
+      return list.continuum ? null : reach
     }
     found = searchBox(search, p, low, high, options.effort ?? defaultEffort, options.shouldStop, judge)
     for (const zero of found.zeros) list.addProved(zero)
@@ -197,16 +197,35 @@ class StateList {
 
   /**
    * The middle of a place that could not be decided: listed as a multiple zero if F vanishes there as far as rounding
-   * lets one see. Returns the multiplicity that polishing went for, null where it is no zero.
+   * lets one see. Returns how far around it nothing can be decided either.
    */
-  addUndecided(middle: Float64Array): 2 | 3 | null {
+  addUndecided(middle: Float64Array): Float64Array {
     const { newton, p } = this
     const x = middle.slice()
-    const multiplicity = polishMultiple(newton, p, x)
+    const shape = polishMultiple(newton, p, x)
     const moved = x.some((v, j) => Math.abs(v - (middle[j] as number)) > 1e-3 * (newton.width[j] as number))
-    if (moved || !this.#isInside(x) || !this.#mayVanish(x)) return null
+    const same = (share: number): Float64Array => x.map((_, j) => share * ownSize(newton, x, j))
+    if (moved || !this.#isInside(x) || !this.#mayVanish(x)) return same(1e-8)
     this.#addMultiple(x)
-    return multiplicity
+    let reach = same(sameShare)
+    // Rounding grows with the distance where terms cancel at the zero: a few steps settle it.
+    for (let round = 0; shape !== null && round < 5; round++) {
+      const noise = Math.max(this.#noiseAt(x), this.#noiseAt(x.map((v, j) => v + (reach[j] as number))))
+      const blur = shape.blurredBy(4 * noise)
+      reach = reach.map((r, j) => Math.max(r, 2 * (blur[j] as number)))
+    }
+    return reach
+  }
+
+  /** Width of the enclosure of F at the point itself, in units of the rows' sizes: what rounding may hide. */
+  #noiseAt(x: Float64Array): number {
+    const { interval, system } = this.#search
+    system.value(x, x, interval.flo, interval.fhi)
+    const { rowScale } = this.newton
+    return interval.flo.reduce(
+      (most, low, i) => Math.max(most, ((interval.fhi[i] as number) - low) / (rowScale[i] as number)),
+      0,
+    )
   }
 
   #addMultiple(x: Float64Array): void {
@@ -237,17 +256,13 @@ class StateList {
 
   /** Within 1e-6 of the box, or of the coordinates' own size where the box is a thousand times wider. */
   #isNear(x: Float64Array, y: Float64Array): boolean {
-    return this.newton.width.every((w, j) => {
-      const size = Math.min(w, Math.max(Math.abs(x[j] as number), 1e-3 * w))
-      return Math.abs((x[j] as number) - (y[j] as number)) <= sameShare * size
-    })
+    return x.every((v, j) => Math.abs(v - (y[j] as number)) <= sameShare * ownSize(this.newton, x, j))
   }
 
-  /** Is zero within the enclosure of F over 1e-8 of a width around x? */
+  /** Is zero within the enclosure of F over a tenth of that distance around x? */
   #mayVanish(x: Float64Array): boolean {
     const { interval, system } = this.#search
-    const { width } = this.newton
-    const reach = (j: number): number => 1e-8 * Math.max(Math.min(width[j] as number, 1), Math.abs(x[j] as number))
+    const reach = (j: number): number => 0.1 * sameShare * ownSize(this.newton, x, j)
     const [low, high] = [x.map((v, j) => v - reach(j)), x.map((v, j) => v + reach(j))]
     system.value(low, high, interval.flo, interval.fhi)
     return interval.flo.every((v, i) => v <= 0 && (interval.fhi[i] as number) >= 0)
