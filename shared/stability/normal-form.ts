@@ -1,11 +1,18 @@
 import { type Complex, innerProduct } from '#shared/numerics/complex.ts'
 import { type ComplexLu, createComplexLu, factorShifted, solveComplexLu } from '#shared/numerics/complex-solve.ts'
 import { createEigenvectors, eigenvectors } from '#shared/numerics/eigenvectors.ts'
-import { createLu, factorLu, norm1, reciprocalCondition, solveLu } from '#shared/numerics/linear-solve.ts'
+import {
+  createLu,
+  factorBordered,
+  factorLu,
+  norm1,
+  reciprocalCondition,
+  solveLu,
+} from '#shared/numerics/linear-solve.ts'
 import type { Forms } from './forms.ts'
 import { type Frame, linearise, observedAt } from './frame.ts'
 import { type LocatedHopf, scaledJacobian } from './hopf-point.ts'
-import type { Spectrum } from './spectrum.ts'
+import { onAxis, type Spectrum } from './spectrum.ts'
 
 /** A complex vector of n + 1 entries in scaled coordinates; the control's entry is 0. */
 interface Direction {
@@ -31,6 +38,13 @@ export interface CriticalPair {
   readonly halfRange: number
   readonly condition: number
   readonly jacobian: Float64Array
+  /** Null vectors of A where a real eigenvalue is zero as well (zero-Hopf). */
+  readonly zeroMode: ZeroMode | null
+}
+
+interface ZeroMode {
+  readonly left: Float64Array
+  readonly right: Float64Array
 }
 
 /** True where another eigenvalue lies so close to i omega that no single eigenvector is meant. */
@@ -84,7 +98,16 @@ export function criticalPair(frame: Frame, point: LocatedHopf): CriticalPair | n
     halfRange,
     condition,
     jacobian,
+    zeroMode: zeroModeOf(point.sample.spectrum, jacobian),
   }
+}
+
+function zeroModeOf(spectrum: Spectrum, jacobian: Float64Array): ZeroMode | null {
+  const zero = spectrum.im.findIndex((im, i) => im === 0 && onAxis(spectrum, i))
+  if (zero < 0) return null
+  const vectors = createEigenvectors(spectrum.n)
+  if (eigenvectors(vectors, jacobian, spectrum.re[zero] as number, 0) === null) return null
+  return { left: vectors.pRe.slice(), right: vectors.qRe.slice() }
 }
 
 /**
@@ -169,11 +192,10 @@ function evaluate(
   const { n } = frame
   const { jacobian, omega } = pair
   const { bqqRe, bqqIm, bqqBar, cRe, cIm } = formsOfPair(frame, forms, z, q)
-  const lu = createLu(n)
   const complexLu = createComplexLu(n)
-  if (!factorLu(lu, jacobian) || !factorShifted(complexLu, jacobian, 0, 2 * omega, -1)) return null
-  const mean = widened(bqqBar)
-  solveLu(lu, mean)
+  const solved = solveMean(jacobian, bqqBar, pair.zeroMode)
+  if (!solved || !factorShifted(complexLu, jacobian, 0, 2 * omega, -1)) return null
+  const mean = widened(solved.mean)
   const secondRe = widened(bqqRe)
   const secondIm = widened(bqqIm)
   solveOnFirst(complexLu, secondRe, secondIm, n)
@@ -183,12 +205,40 @@ function evaluate(
   const first = innerProduct(pRe, pIm, bMean.re, bMean.im, n)
   const second = innerProduct(pRe, pIm, bSecond.re, bSecond.im, n)
   const c1 = { re: 0.5 * (cubic.re - 2 * first.re + second.re), im: 0.5 * (cubic.im - 2 * first.im + second.im) }
-  const worst = 1 / Math.max(1e-16, reciprocalCondition(lu, norm1(jacobian, n)))
+  const worst = 1 / Math.max(1e-16, solved.reciprocalCondition)
   const terms =
     weight(pRe, pIm, cRe, cIm) +
     2 * weight(pRe, pIm, bMean.re, bMean.im) * Math.min(worst, 1e8) +
     weight(pRe, pIm, bSecond.re, bSecond.im)
   return { c1, rounding: 4 * 2 ** -52 * pair.condition * terms }
+}
+
+/**
+ * A⁻¹ b. Where A has a zero eigenvalue there is an answer only if b has no part along it (the mode of another branch that
+ * the oscillation does not drive): then the bordered system gives the one without a part along it. Null otherwise: the
+ * cubic coefficient is infinite there.
+ */
+function solveMean(
+  jacobian: Float64Array,
+  b: Float64Array,
+  zeroMode: ZeroMode | null,
+): { mean: Float64Array; reciprocalCondition: number } | null {
+  const n = b.length
+  if (!zeroMode) {
+    const lu = createLu(n)
+    if (!factorLu(lu, jacobian)) return null
+    const mean = b.slice()
+    solveLu(lu, mean)
+    return { mean, reciprocalCondition: reciprocalCondition(lu, norm1(jacobian, n)) }
+  }
+  const { left, right } = zeroMode
+  const lu = createLu(n + 1)
+  if (!factorBordered(lu, jacobian, left, right, 0)) return null
+  const solution = widened(b)
+  solveLu(lu, solution)
+  const size = (v: Float64Array): number => Math.sqrt(v.reduce((sum, value) => sum + value * value, 0))
+  if (Math.abs(solution[n] as number) * size(left) > 1e-8 * size(b)) return null
+  return { mean: solution.slice(0, n), reciprocalCondition: 1e-3 }
 }
 
 /** B(q,q), B(q,q̄) (real) and C(q,q,q̄) from jets along u, v, u + v and u - v, with q = u + iv. */

@@ -99,8 +99,9 @@ function createWatch(
   let returns: Return[] = []
   let rates: { size: number; excess: number }[] = []
   let lastT = 0
-  let last: Float64Array | null = null
-  let lastSlope: Float64Array | null = null
+  const last = new Float64Array(n)
+  const lastSlope = new Float64Array(n)
+  let hasLast = false
   let mark: { t: number; size: number; attractor: number } | null = null
 
   const sizeFrom = (x: Float64Array, centre: Float64Array): number => {
@@ -177,7 +178,7 @@ function createWatch(
         answer = { kind: 'diverges' }
         return true
       }
-      if (last && lastSlope) {
+      if (hasLast) {
         const axis = leading(lastSlope, dy, widths)
         const top = axis >= 0 ? topBetween(lastT, last, lastSlope, t, y, dy, axis) : null
         if (top) onReturn(top.t, top.x)
@@ -186,8 +187,9 @@ function createWatch(
         }
       }
       lastT = t
-      last = y.slice()
-      lastSlope = dy.slice()
+      last.set(y)
+      lastSlope.set(dy)
+      hasLast = true
       return answer !== null
     },
     restart(next) {
@@ -195,8 +197,7 @@ function createWatch(
       returns = []
       rates = []
       mark = null
-      last = null
-      lastSlope = null
+      hasLast = false
       lastT = 0
     },
     answer: () => answer,

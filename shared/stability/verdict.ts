@@ -123,8 +123,12 @@ function atKink(frame: Frame, point: BranchHopf): boolean {
   return frame.model.kinkAt(frame.x, frame.parameters, 1e-8)
 }
 
-/** Where the pair is not simple its rate comes from the real parts a short way off on both sides. */
+/**
+ * Where the pair is not simple its rate comes from the real parts a short way off on both sides. On a turning point of the
+ * branch (a zero-Hopf point) there is no rate per unit of the control; the card's format wants a number: 0.
+ */
 function crossingOf(frame: Frame, forms: Forms, point: BranchHopf, pair: CriticalPair | null): number {
+  if (Math.abs(point.sample.t[frame.n] as number) < 1e-8) return 0
   const rate = pair ? eigenvalueRate(frame, forms, point, pair).re : rateByDifference(frame, point)
   return Number.isFinite(rate) ? rate : 0
 }

@@ -199,17 +199,24 @@ describe('verdicts that are withheld', () => {
     expect(warningCodes(card)).toEqual(['observed-silent'])
   })
 
-  test('degenerate where a real eigenvalue is zero at the same value (zero-Hopf), and nothing infinite is printed', () => {
-    const card = cardOf({
-      equations: 'dz/dt = mu*z - z^3\ndx/dt = mu*x - y - x*(x^2+y^2)\ndy/dt = x + mu*y - y*(x^2+y^2)',
-      control: { mu: [-0.5, -1, 1] },
-      states: { z: box, x: box, y: box },
-      observed: 'x',
-    })
-    const atZero = card.hopf?.filter(({ p }) => Math.abs(p) < 1e-9) ?? []
-    expect(atZero.length).toBeGreaterThan(0)
-    for (const point of atZero) expect(point.verdict).toBe('degenerate')
-    expect(JSON.stringify(card)).not.toMatch(/NaN|Infinity/)
+  test('degenerate where a real eigenvalue is zero at the same value; the coefficient stands where that mode is not driven', () => {
+    const zeroHopf = (z: string) =>
+      cardOf({
+        equations: `dz/dt = ${z}\ndx/dt = mu*x - y - x*(x^2+y^2) + z*x\ndy/dt = x + mu*y - y*(x^2+y^2) + z*y`,
+        control: { mu: [-0.5, -1, 1] },
+        states: { z: [-0.2, 0.2], x: box, y: box },
+        observed: 'x',
+      })
+    const alone = zeroHopf('mu*z - z^3')
+    expect(alone.hopf?.filter(({ p }) => p === 0)).toMatchObject([{ verdict: 'degenerate', operating: false }])
+    expect(alone.hopf?.find(({ p }) => p === 0)?.cubic).toBeCloseTo(-1, 10)
+    // driven by x² + y²: the coefficient is infinite
+    const driven = zeroHopf('mu*z - z^3 + x^2 + y^2')
+    expect(driven.hopf?.filter(({ p }) => Math.abs(p) < 1e-9)).toMatchObject([
+      { verdict: 'degenerate', cubic: null, firstLyapunov: null },
+    ])
+    expect(JSON.stringify([alone, driven])).not.toMatch(/NaN|Infinity/)
+    expect(warningCodes(alone)).toContain('degenerate')
   })
 })
 
