@@ -84,6 +84,8 @@ export function createSearchSpace(model: SearchableModel, newton: NewtonSpace): 
 const smallestShare = 1e-12
 const smallestRelative = 1e-8
 const mostUndecided = 200
+/** More zeros than this and the search ends: sin(1/x) has no end of them. */
+export const mostZeros = 1000
 /** Off the middle, so that a zero in the middle of a symmetric box does not end up on the corner of all its parts. */
 const cutAt = 0.4871
 
@@ -118,7 +120,7 @@ export function searchBox(
     const xlo = box.subarray(0, n)
     const xhi = box.subarray(n)
     result.boxes++
-    if (spent() > effort || (result.boxes % 32 === 0 && shouldStop?.())) {
+    if (spent() > effort || result.zeros.length > mostZeros || (result.boxes % 32 === 0 && shouldStop?.())) {
       stack.push(box)
       result.finished = false
       break

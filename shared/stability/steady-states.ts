@@ -63,6 +63,7 @@ const edgeShare = 1e-9
 interface Solver {
   newton: NewtonSpace
   search: SearchSpace
+  starts: Float64Array[]
 }
 const solvers = new WeakMap<SearchableModel, Solver>()
 
@@ -70,7 +71,7 @@ function solverFor(model: SearchableModel): Solver {
   const known = solvers.get(model)
   if (known !== undefined) return known
   const newton = createNewtonSpace(model)
-  const made = { newton, search: createSearchSpace(model, newton) }
+  const made = { newton, search: createSearchSpace(model, newton), starts: startPoints(model) }
   solvers.set(model, made)
   return made
 }
@@ -81,12 +82,12 @@ export function findSteadyStates(
   p: Float64Array,
   options: SteadyStateOptions = {},
 ): SteadyStateResult {
-  const { newton, search } = solverFor(model)
+  const { newton, search, starts: spread } = solverFor(model)
   const { width } = newton
   const low = Float64Array.from(model.system.states, (state, j) => state.low - edgeShare * (width[j] as number))
   const high = Float64Array.from(model.system.states, (state, j) => state.high + edgeShare * (width[j] as number))
   const list = new StateList(newton, search, p, low, high)
-  const starts = startPoints(model, options.guesses ?? [])
+  const starts = [...(options.guesses ?? []), ...spread]
 
   const notFinite = starts.slice(0, 24).some((x) => !isFiniteAt(newton, p, x))
   // A continuum that Newton meets at once need not spend the search's budget first.
@@ -136,7 +137,7 @@ function searchFromStarts(list: StateList, starts: Float64Array[], shouldStop: (
   const allowance = newton.evaluations + Math.min(6000, 1.5e6 / cost)
   let idle = 0
   for (const start of starts) {
-    if (newton.evaluations > allowance || idle > 60 || shouldStop?.()) return
+    if (newton.evaluations > allowance || idle > 60 || list.states.length > mostZeros || shouldStop?.()) return
     const before = list.states.length
     // Without deflation first: it finds what is near; then with it: it is driven to what is not known yet.
     for (const deflation of [null, { points: list.states.map((state) => state.x) }]) {
