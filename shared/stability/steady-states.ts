@@ -13,6 +13,7 @@ import type { SearchableModel } from './steady-search.ts'
 import {
   createSearchSpace,
   isSameZero,
+  mostZeros,
   type ProvedZero,
   type SearchResult,
   type SearchSpace,
