@@ -73,6 +73,8 @@ export const collabLimits = {
     retries: [100, 400, 1600],
     /** Then it is tried again this often. */
     retryEvery: 5 * second,
+    /** A batch that is not committed by then: the room is not saving until it is. */
+    slow: 5 * second,
   },
   compaction: { rows: 500, bytes: 256 * kibi },
   room: {

@@ -37,6 +37,7 @@ export class SaveQueue {
   private hurry: (() => void) | null = null
   private gathering = false
   private stopped = false
+  private failing = false
 
   constructor(target: SaveTarget, limits: CollabLimits['append']) {
     this.target = target
@@ -112,17 +113,27 @@ export class SaveQueue {
   /** Tries until the rows are committed or refused; null where the queue was stopped meanwhile. */
   private async commit(rows: readonly UpdateRow[]): Promise<AppendResult | null> {
     for (let tries = 0; !this.stopped; tries++) {
+      // A database that hangs is not asked a second time: the first answer is waited for, but everybody is told.
+      const slow = setTimeout(() => this.setFailing(true), this.limits.slow)
       try {
         const result = await this.target.inTurn(() => this.target.append(rows))
-        if (tries > this.limits.retries.length) this.target.notSaving(false)
+        this.setFailing(false)
         return result
       } catch (error) {
         this.target.report(error)
-        if (tries === this.limits.retries.length) this.target.notSaving(true)
-        if (!this.stopped) await this.pause(this.limits.retries[tries] ?? this.limits.retryEvery)
+        if (tries >= this.limits.retries.length) this.setFailing(true)
+      } finally {
+        clearTimeout(slow)
       }
+      if (!this.stopped) await this.pause(this.limits.retries[tries] ?? this.limits.retryEvery)
     }
     return null
+  }
+
+  private setFailing(failing: boolean): void {
+    if (this.failing === failing) return
+    this.failing = failing
+    this.target.notSaving(failing)
   }
 
   private async pause(time: number): Promise<void> {

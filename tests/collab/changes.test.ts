@@ -310,6 +310,26 @@ describe('when the database takes nothing', () => {
   })
 })
 
+test('a database that hangs is noticed, and what waited for it is saved once', async () => {
+  const { server, pageId, tokens } = await setUp((limits) => {
+    limits.append.slow = 100
+  })
+  const client = open(server, pageId, tokens.anna)
+  await saved(client)
+  await database.db.transaction(async (tx) => {
+    // Somebody else holds the page's row: the append waits for it.
+    await tx.select({ id: pages.id }).from(pages).where(eq(pages.id, pageId)).for('update')
+    equationsOf(client.doc).insert(0, 'waits ')
+    await roomIs(client, 'not-saving')
+    expect(client.getState()).toMatchObject({ phase: 'saving', unsaved: 1 })
+  })
+  await saved(client)
+  expect(client.getState().room).toBe('live')
+  const rows = await database.db.select().from(pageUpdates).where(eq(pageUpdates.pageId, pageId))
+  expect(rows).toHaveLength(1)
+  expect(server.errors).toEqual([])
+})
+
 describe('who only looks', () => {
   test('is no writer of the draft, also after coming back', async () => {
     const { server, pageId, anna, tokens } = await setUp()
