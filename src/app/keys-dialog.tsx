@@ -26,7 +26,8 @@ const lists: { title: string; keys: [string, string][] }[] = [
     keys: [
       ['Left, Right', 'one step; with Shift ten'],
       ['Home, End', 'ends of the range'],
-      ['o', 'to the onset'],
+      ['o', 'to the next onset'],
+      ['w', 'to the next turning point'],
     ],
   },
 ]

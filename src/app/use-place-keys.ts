@@ -1,35 +1,38 @@
-import { useRef } from 'react'
-import { useNavigate } from 'react-router-dom'
+import { useLocation, useNavigate } from 'react-router-dom'
 import { useSingleKeys } from '#src/hooks/use-single-keys.ts'
+import { awaitsPlace, beginPlaceKey, endPlaceKey } from '#src/lib/single-keys.ts'
 
 const places: Record<string, string> = { 1: '/', 2: '/reviews', 3: '/groups' }
-/** How long a `0` waits for its second key. */
-const waitMs = 1500
 
-/** `/` find, `?` list of keys, `0` then a number a place. The numbers alone belong to the sections of a page. */
+/** `/` find, `?` list of keys, `0` then a number a place, `e` edit where the page offers it. */
 export function usePlaceKeys(onHelp: () => void): void {
   const navigate = useNavigate()
-  const zeroAt = useRef(Number.NEGATIVE_INFINITY)
+  const { pathname } = useLocation()
   useSingleKeys((key) => {
-    const second = Date.now() - zeroAt.current < waitMs
-    zeroAt.current = Number.NEGATIVE_INFINITY
-    if (key === '0') {
-      zeroAt.current = Date.now()
-      return true
-    }
-    const place = second ? places[key] : undefined
-    if (place !== undefined) {
-      navigate(place)
-      return true
-    }
-    if (key === '?') {
-      onHelp()
-      return true
-    }
-    if (key !== '/') return false
-    const field = document.querySelector<HTMLInputElement>('[data-find]')
-    if (field && field.offsetParent !== null) field.focus()
-    else navigate('/', { state: { find: true } })
+    const place = awaitsPlace(Date.now()) ? places[key] : undefined
+    endPlaceKey()
+    if (key === '0') beginPlaceKey(Date.now())
+    else if (place !== undefined) navigate(place)
+    else if (key === '?') onHelp()
+    else if (key === '/') find(() => navigate('/', { state: { find: true } }))
+    else if (key === 'e') return edit(pathname, navigate)
+    else return false
     return true
   })
+}
+
+function find(elsewhere: () => void): void {
+  const field = document.querySelector<HTMLInputElement>('[data-find]')
+  if (field && field.offsetParent !== null) field.focus()
+  else elsewhere()
+}
+
+/** Only what the page itself offers: where its link to the draft is not shown, the key means nothing. */
+function edit(pathname: string, navigate: (to: string) => void): boolean {
+  const page = /^\/m\/[^/]+/.exec(pathname)?.[0]
+  const address = `${page}/edit`
+  if (page === undefined || pathname === address || !document.querySelector(`main a[href="${CSS.escape(address)}"]`))
+    return false
+  navigate(address)
+  return true
 }

@@ -1,6 +1,8 @@
 import type { ReactNode } from 'react'
-import { Link } from 'react-router-dom'
+import { Link, useNavigate } from 'react-router-dom'
+import { useSingleKeys } from '#src/hooks/use-single-keys.ts'
 import { classes } from '#src/lib/class-names.ts'
+import { awaitsPlace } from '#src/lib/single-keys.ts'
 
 export interface Section {
   to: string
@@ -10,7 +12,10 @@ export interface Section {
   current: boolean
 }
 
-/** The sections of a page, with counts. A lit one is bold and underlined in pencil; they scroll sideways on a phone. */
+/**
+ * The sections of a page, with counts; `1` is the first. A lit one is bold and underlined in pencil; they scroll
+ * sideways on a phone.
+ */
 export function SectionBar({
   label,
   sections,
@@ -20,12 +25,18 @@ export function SectionBar({
   sections: readonly Section[]
   children?: ReactNode
 }) {
+  const navigate = useNavigate()
+  useSingleKeys((key) => {
+    const section = /^[1-9]$/.test(key) && !awaitsPlace(Date.now()) ? sections[Number(key) - 1] : undefined
+    if (section) navigate(section.to)
+    return section !== undefined
+  })
   return (
     <div className="flex flex-wrap items-center justify-between gap-x-4 gap-y-2">
       <nav aria-label={label} className="-mx-2 -my-1 min-w-0 overflow-x-auto px-2 py-2">
         <ul className="flex gap-5">
           {sections.map((section) => (
-            <li key={section.to}>
+            <li key={section.label}>
               <Link
                 to={section.to}
                 aria-current={section.current ? 'page' : undefined}

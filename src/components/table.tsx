@@ -1,4 +1,5 @@
-import type { ComponentProps, ReactNode } from 'react'
+import { type ComponentProps, type ReactNode, useRef } from 'react'
+import { useOverflows } from '#src/hooks/use-overflows.ts'
 import { classes } from '#src/lib/class-names.ts'
 
 /** A ruled table: heavy line under the head, hairlines between rows. Scrolls sideways inside itself where it must. */
@@ -13,13 +14,17 @@ export function Table({
   children: ReactNode
   className?: string
 }) {
+  const box = useRef<HTMLDivElement>(null)
+  // A box that scrolls has to be reachable by keyboard; one that does not is no stop on the way.
+  const scrolls = useOverflows(box)
+  const reachable = scrolls ? { role: 'region', 'aria-label': caption, tabIndex: 0 } : {}
   return (
-    <section aria-label={caption} tabIndex={0} className={classes('overflow-x-auto', className)}>
+    <div ref={box} {...reachable} className={classes('overflow-x-auto', className)}>
       <table className="w-full border-collapse text-left">
         <caption className={captionHidden ? 'sr-only' : 'px-4 py-2 text-left text-note text-ink-2'}>{caption}</caption>
         {children}
       </table>
-    </section>
+    </div>
   )
 }
 

@@ -10,7 +10,8 @@ export type ReadFile = { ok: true; document: unknown; title: string | null } | {
 /** Text of a file or of the clipboard as a model document. Whether it makes a model is the server's to say; this only reads JSON. */
 export function readModelText(text: string): ReadFile {
   if (text.trim() === '') return { ok: false, message: 'Choose a file or paste a model document.' }
-  if (text.length > largestFile) return { ok: false, message: 'Larger than 250 KiB, which is more than the library takes.' }
+  if (text.length > largestFile)
+    return { ok: false, message: 'Larger than 250 KiB, which is more than the library takes.' }
   let document: unknown
   try {
     document = JSON.parse(text)
