@@ -14,6 +14,7 @@ import { arity } from './op-codes.ts'
 import type { Tape } from './tape.ts'
 import type { TapeBuilder } from './tape-builder.ts'
 
+/** Contraction for one model; not reentrant. */
 export interface Contractor {
   /**
    * Shrinks the box in place at the parameters `p`. False where it holds no zero of F. `effort` counts the interval

@@ -16,6 +16,7 @@ interface Chain {
   factor: number
 }
 
+/** A sparse gradient: `entries[k]` is the derivative in the input of column `columns[k]`. */
 export interface Gradient {
   columns: number[]
   /** Node of each entry. */

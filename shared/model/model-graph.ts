@@ -13,6 +13,7 @@ export interface Kink {
   parts: number[]
 }
 
+/** A model lowered into one builder; further tapes may be cut from it at any time. */
 export interface ModelGraph {
   system: ModelSystem
   builder: TapeBuilder

@@ -51,6 +51,7 @@ export const op = {
 
 /** A constant or an input is a node of the builder, never an instruction. */
 export const constantCode = 254
+/** A state or parameter. */
 export const inputCode = 255
 
 /** Number of register operands by code; `powi`, `exprel` and `bernoulli` have a plain number as second operand. */

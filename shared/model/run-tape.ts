@@ -13,6 +13,7 @@ export interface TapeRunner {
   output(k: number): number
 }
 
+/** Makes registers for a tape; constants are filled in once. */
 export function createRunner(tape: Tape): TapeRunner {
   const { states, inputs } = tape
   const registers = new Float64Array(tape.registers)

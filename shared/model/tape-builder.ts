@@ -14,6 +14,7 @@ import { arity, constantCode, inputCode, op } from './op-codes.ts'
 /** Largest integer exponent that is expanded into multiplications. */
 const expandedPower = 64
 
+/** The graph under construction. Nodes are numbers; operations return the node of their result, which may exist already. */
 export class TapeBuilder {
   /** Number of inputs: nodes 0 .. inputs - 1 (states first, then parameters). */
   readonly inputs: number

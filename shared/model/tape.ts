@@ -8,6 +8,7 @@
 import { arity, constantCode, inputCode } from './op-codes.ts'
 import type { TapeBuilder } from './tape-builder.ts'
 
+/** Straight-line code, see above; immutable. */
 export interface Tape {
   /** Number of input registers. */
   readonly inputs: number

@@ -53,6 +53,7 @@ function nowhere(lo: Float64Array, hi: Float64Array, r: number): Coverage {
   return none
 }
 
+/** r = sqrt(x), rounded outward by one unit. */
 export function sqrtInterval(lo: Float64Array, hi: Float64Array, r: number, x: number): Coverage {
   const a = lo[x] as number
   const b = hi[x] as number
@@ -73,22 +74,26 @@ function expUpper(v: number): number {
   return e === 0 ? 1e-323 : upper(e, errorBound.exp) + eta
 }
 
+/** r = e^x; never below 0. */
 export function expInterval(lo: Float64Array, hi: Float64Array, r: number, x: number): void {
   const low = expLower(lo[x] as number)
   hi[r] = expUpper(hi[x] as number)
   lo[r] = low
 }
 
+/** r = e^x - 1; never below -1. */
 export function expm1Interval(lo: Float64Array, hi: Float64Array, r: number, x: number): void {
   const low = Math.max(-1, lower(boundedExpm1(lo[x] as number), errorBound.expm1))
   hi[r] = upper(boundedExpm1(hi[x] as number), errorBound.expm1)
   lo[r] = low
 }
 
+/** r = natural logarithm of x. */
 export function logInterval(lo: Float64Array, hi: Float64Array, r: number, x: number): Coverage {
   return logarithm(lo, hi, r, lo[x] as number, hi[x] as number, boundedLog, errorBound.log)
 }
 
+/** r = decimal logarithm of x. */
 export function log10Interval(lo: Float64Array, hi: Float64Array, r: number, x: number): Coverage {
   return logarithm(lo, hi, r, lo[x] as number, hi[x] as number, boundedLog10, errorBound.log10)
 }
@@ -108,6 +113,7 @@ function logarithm(
   return a <= 0 ? partial : full
 }
 
+/** r = log(1 + x). */
 export function log1pInterval(lo: Float64Array, hi: Float64Array, r: number, x: number): Coverage {
   const a = lo[x] as number
   const b = hi[x] as number
@@ -172,6 +178,7 @@ function tanAt(v: number, which: Float64Array): number {
   return which[3] as number
 }
 
+/** r = asin(x). */
 export function asinInterval(lo: Float64Array, hi: Float64Array, r: number, x: number): Coverage {
   const a = lo[x] as number
   const b = hi[x] as number
@@ -181,6 +188,7 @@ export function asinInterval(lo: Float64Array, hi: Float64Array, r: number, x: n
   return a < -1 || b > 1 ? partial : full
 }
 
+/** r = acos(x): decreasing. */
 export function acosInterval(lo: Float64Array, hi: Float64Array, r: number, x: number): Coverage {
   const a = lo[x] as number
   const b = hi[x] as number
@@ -190,18 +198,21 @@ export function acosInterval(lo: Float64Array, hi: Float64Array, r: number, x: n
   return a < -1 || b > 1 ? partial : full
 }
 
+/** r = atan(x). */
 export function atanInterval(lo: Float64Array, hi: Float64Array, r: number, x: number): void {
   const low = lower(boundedAtan(lo[x] as number), errorBound.atan)
   hi[r] = upper(boundedAtan(hi[x] as number), errorBound.atan)
   lo[r] = low
 }
 
+/** r = sinh(x). */
 export function sinhInterval(lo: Float64Array, hi: Float64Array, r: number, x: number): void {
   const low = lower(boundedSinh(lo[x] as number), errorBound.sinh)
   hi[r] = upper(boundedSinh(hi[x] as number), errorBound.sinh)
   lo[r] = low
 }
 
+/** r = cosh(x); never below 1, least where |x| is. */
 export function coshInterval(lo: Float64Array, hi: Float64Array, r: number, x: number): void {
   const a = lo[x] as number
   const b = hi[x] as number
@@ -210,12 +221,14 @@ export function coshInterval(lo: Float64Array, hi: Float64Array, r: number, x: n
   hi[r] = upper(boundedCosh(Math.max(-a, b)), errorBound.cosh)
 }
 
+/** r = tanh(x); never beyond -1 and 1. */
 export function tanhInterval(lo: Float64Array, hi: Float64Array, r: number, x: number): void {
   const low = Math.max(-1, lower(boundedTanh(lo[x] as number), errorBound.tanh))
   hi[r] = Math.min(1, upper(boundedTanh(hi[x] as number), errorBound.tanh))
   lo[r] = low
 }
 
+/** r = 1/(1 + e^-x); never beyond 0 and 1. */
 export function logisticInterval(lo: Float64Array, hi: Float64Array, r: number, x: number): void {
   const low = Math.max(0, lower(boundedLogistic(lo[x] as number), errorBound.logistic))
   const v = boundedLogistic(hi[x] as number)

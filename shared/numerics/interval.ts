@@ -14,8 +14,11 @@
 
 /** How far an operation was defined over its operands. */
 export type Coverage = 0 | 1 | 2
+/** Defined and continuous on all of the operand. */
 export const full = 0
+/** Not defined, or not continuous, somewhere on the operand. */
 export const partial = 1
+/** Defined nowhere on the operand. */
 export const none = 2
 
 const phi = 2 ** -53 * (1 + 2 ** -52)
@@ -84,18 +87,21 @@ function entire(lo: Float64Array, hi: Float64Array, r: number): void {
   hi[r] = Number.POSITIVE_INFINITY
 }
 
+/** r = x + y. */
 export function addInterval(lo: Float64Array, hi: Float64Array, r: number, x: number, y: number): void {
   const low = sumBelow(lo[x] as number, lo[y] as number)
   hi[r] = sumAbove(hi[x] as number, hi[y] as number)
   lo[r] = low
 }
 
+/** r = x - y. */
 export function subInterval(lo: Float64Array, hi: Float64Array, r: number, x: number, y: number): void {
   const low = sumBelow(lo[x] as number, -(hi[y] as number))
   hi[r] = sumAbove(hi[x] as number, -(lo[y] as number))
   lo[r] = low
 }
 
+/** r = -x, exact. */
 export function negInterval(lo: Float64Array, hi: Float64Array, r: number, x: number): void {
   const low = -(hi[x] as number)
   hi[r] = -(lo[x] as number)
@@ -196,6 +202,7 @@ function magnitudePower(v: number, k: number, round: (v: number) => number): num
   return result
 }
 
+/** r = |x|, exact. */
 export function absInterval(lo: Float64Array, hi: Float64Array, r: number, x: number): void {
   const a = lo[x] as number
   const b = hi[x] as number
@@ -212,12 +219,14 @@ export function signInterval(lo: Float64Array, hi: Float64Array, r: number, x: n
   return a <= 0 && b >= 0 && !(a === 0 && b === 0) ? partial : full
 }
 
+/** r = min(x, y), exact. */
 export function minInterval(lo: Float64Array, hi: Float64Array, r: number, x: number, y: number): void {
   const low = Math.min(lo[x] as number, lo[y] as number)
   hi[r] = Math.min(hi[x] as number, hi[y] as number)
   lo[r] = low
 }
 
+/** r = max(x, y), exact. */
 export function maxInterval(lo: Float64Array, hi: Float64Array, r: number, x: number, y: number): void {
   const low = Math.max(lo[x] as number, lo[y] as number)
   hi[r] = Math.max(hi[x] as number, hi[y] as number)

@@ -19,6 +19,7 @@ export interface IntervalSystem {
   isDefined(xlo: Float64Array, xhi: Float64Array): boolean
 }
 
+/** Work arrays for systems of n unknowns; what they hold belongs to the last call. */
 export interface NewtonWorkspace {
   readonly n: number
   readonly lu: Lu
@@ -39,6 +40,7 @@ export interface NewtonWorkspace {
   readonly khi: Float64Array
 }
 
+/** Makes work arrays for n unknowns. */
 export function createNewton(n: number): NewtonWorkspace {
   const vector = (): Float64Array => new Float64Array(n)
   const matrix = (): Float64Array => new Float64Array(n * n)

@@ -12,14 +12,19 @@ export interface SingularValues {
 
 /** Decomposes the row-major n x n matrix `a` (untouched). Allocates its result. Null where a value is not finite. */
 export function singularValues(a: Float64Array, n: number): SingularValues | null {
-  // Row i of w is column i of A; rotations act on pairs of rows.
+  let unit = 0
+  for (let k = 0; k < n * n; k++) unit = Math.max(unit, Math.abs(a[k] as number))
+  if (!Number.isFinite(unit)) return null
+  if (unit === 0) unit = 1
+  // Row i of w is column i of A in units of its largest entry (sums of squares neither overflow nor vanish); rotations
+  // act on pairs of rows.
   const w = new Float64Array(n * n)
   const z = new Float64Array(n * n)
   for (let i = 0; i < n; i++) {
     for (let j = 0; j < n; j++) {
       const value = a[i * n + j] as number
-      if (!Number.isFinite(value)) return null
-      w[j * n + i] = value
+      if (Number.isNaN(value)) return null
+      w[j * n + i] = value / unit
     }
     z[i * n + i] = 1
   }
@@ -52,7 +57,7 @@ export function singularValues(a: Float64Array, n: number): SingularValues | nul
   const result = { values: new Float64Array(n), u: new Float64Array(n * n), v: new Float64Array(n * n) }
   order.forEach((from, to) => {
     const size = norms[from] as number
-    result.values[to] = size
+    result.values[to] = size * unit
     for (let i = 0; i < n; i++) {
       result.v[i * n + to] = z[from * n + i] as number
       result.u[i * n + to] = size > 0 ? (w[from * n + i] as number) / size : 0

@@ -19,6 +19,7 @@ export interface NewtonSpace {
   evaluations: number
 }
 
+/** Makes work arrays for a model. */
 export function createNewtonSpace(model: CompiledModel): NewtonSpace {
   const { n } = model
   const vector = (): Float64Array => new Float64Array(n)
@@ -37,6 +38,7 @@ export function createNewtonSpace(model: CompiledModel): NewtonSpace {
   }
 }
 
+/** Is no value NaN or infinite? */
 export function allFinite(values: Float64Array): boolean {
   for (const value of values) if (!Number.isFinite(value)) return false
   return true

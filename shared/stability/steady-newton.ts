@@ -105,6 +105,7 @@ function stepSize(space: NewtonSpace): number {
   return size
 }
 
+/** How polishing ended. */
 export interface Polished {
   residual: number
   /** Newton's last step in box widths: small at a simple zero; creeping down at a multiple one. */

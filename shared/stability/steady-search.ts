@@ -27,14 +27,17 @@ export interface SearchHelp {
   coverage?(xlo: Float64Array, xhi: Float64Array, plo: Float64Array, phi: Float64Array, jacobian: boolean): number
   instructions?: { rhs: number; jacobian: number }
 }
+/** A compiled model, with the help of tapes where it has it. */
 export type SearchableModel = CompiledModel & SearchHelp
 
+/** A zero that Krawczyk's test has proved to exist and to be the only one in a box around it. */
 export interface ProvedZero {
   x: Float64Array
   /** Radius of the proof in box widths. */
   radius: number
 }
 
+/** What a search has found, and what it has left open. */
 export interface SearchResult {
   zeros: ProvedZero[]
   /** Middles and half-widths of what could not be decided, neighbours put together. */
@@ -46,6 +49,7 @@ export interface SearchResult {
   boxes: number
 }
 
+/** Work arrays of the searches of one model. */
 export interface SearchSpace {
   readonly model: SearchableModel
   readonly newton: NewtonSpace
@@ -54,6 +58,7 @@ export interface SearchSpace {
   readonly interval: ReturnType<typeof createNewton>
 }
 
+/** Makes work arrays; the parameters are set by each search. */
 export function createSearchSpace(model: SearchableModel, newton: NewtonSpace): SearchSpace {
   const parameters = { current: new Float64Array(model.m) }
   const { n } = model

@@ -22,6 +22,7 @@ import {
 import { isContinuum, isMultipleAt, polishMultiple } from './steady-singular.ts'
 import { startPoints } from './steady-starts.ts'
 
+/** One steady state. */
 export interface FoundState {
   /** Values of the states in document order. */
   x: Float64Array
@@ -33,6 +34,7 @@ export interface FoundState {
   multiple: boolean
 }
 
+/** All that is known about the steady states in the box. */
 export interface SteadyStateResult {
   /** In no particular order. */
   states: FoundState[]
@@ -48,6 +50,7 @@ export interface SteadyStateResult {
   boxes: number
 }
 
+/** Bounds and hints of a search. */
 export interface SteadyStateOptions {
   /** Budget of the search in interval operations (one is about 10 to 30 ns); deterministic. Default 3 million. */
   effort?: number

@@ -87,6 +87,15 @@ describe('singular values', () => {
     expect(s?.values[1]).toBeCloseTo(Math.sqrt(5), 14)
   })
 
+  it('survive entries whose squares leave the range of doubles', () => {
+    for (const unit of [1e-263, 1e200, 5e-324]) {
+      const s = singularValues(Float64Array.of(3 * unit, 0, 4 * unit, 5 * unit), 2)
+      expect((s?.values[0] ?? 0) / unit).toBeCloseTo(Math.sqrt(45), unit === 5e-324 ? 0 : 13)
+    }
+    expect(singularValues(Float64Array.of(1, Number.NaN, 0, 1), 2)).toBeNull()
+    expect(singularValues(Float64Array.of(0, 0, 0, 0), 2)?.values).toEqual(Float64Array.of(0, 0))
+  })
+
   it('rebuild the matrix with orthogonal factors, also where it is singular', () => {
     const n = 4
     fc.assert(
