@@ -33,7 +33,12 @@ export function databaseOwner() {
 
 /** Makes the data directory. Folders made here may be entered by everybody; the mode of those that stood is never changed. */
 export function makeDataDirectory(directory) {
-  const first = mkdirSync(directory, { recursive: true })
+  let first
+  try {
+    first = mkdirSync(directory, { recursive: true })
+  } catch (error) {
+    throw new Error(`The data directory ${directory} (BRINKBOOK_DATA) cannot be made: ${error.message}`)
+  }
   if (!isRoot) return
   if (first !== undefined) {
     for (let made = path.resolve(directory); made !== path.dirname(path.resolve(first)); made = path.dirname(made)) {

@@ -8,7 +8,7 @@ import { checkNode, ensureClient, ensurePackages } from './setup.mjs'
 const say = createSay()
 const bin = (file) => path.join(cloneRoot, 'node_modules', file)
 /** Folders below tests/ of which at least one file has to have run: a project left out by mistake is a failure. */
-const expected = ['architecture', 'browser', 'collab', 'drizzle', 'server', 'shared', 'src']
+const expected = ['architecture', 'browser', 'collab', 'drizzle', 'reference', 'server', 'shared', 'src']
 const programs = {
   mariadbd: 'mariadb-server',
   'mariadb-install-db': 'mariadb-server',
