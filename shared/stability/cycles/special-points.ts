@@ -1,0 +1,82 @@
+import { type CycleAt, locateOn, type Stretch } from './branch-point.ts'
+import type { CycleSpace } from './cycle-system.ts'
+
+/** A turning point, period doubling or torus point on a stretch of a branch. */
+export interface Special {
+  readonly kind: 'fold' | 'period-doubling' | 'torus'
+  readonly at: CycleAt
+  /** Share of the stretch at which it lies. */
+  readonly s: number
+}
+
+/**
+ * Turning point: the tangent's control component changes sign. (Multipliers cannot find it: near it the double one
+ * splits.) Located until that component is below 1e-7, so the control value is right to its square.
+ */
+function foldRate({ solution }: CycleAt): number {
+  return solution.tangent.p
+}
+
+/**
+ * Product of (mu + 1), each factor brought to size one: changes sign where a real multiplier passes -1, and is smooth
+ * where two real ones become a pair (whose two factors have a positive product).
+ */
+function doublingTest({ solution: { re, im } }: CycleAt): number {
+  let product = 1
+  for (let i = 0; i < re.length; i++) {
+    const x = (re[i] as number) + 1
+    const y = im[i] as number
+    product *= (y === 0 ? x : Math.hypot(x, y)) / (1 + Math.hypot(re[i] as number, y))
+  }
+  return product
+}
+
+/** Product of (mu_i mu_j - 1) over pairs, each factor brought to size one: changes sign where a pair has product 1. */
+function torusTest({ solution: { re, im } }: CycleAt): number {
+  let productRe = 1
+  let productIm = 0
+  for (let i = 0; i < re.length; i++) {
+    for (let j = i + 1; j < re.length; j++) {
+      const a = (re[i] as number) * (re[j] as number) - (im[i] as number) * (im[j] as number)
+      const b = (re[i] as number) * (im[j] as number) + (im[i] as number) * (re[j] as number)
+      const scale = 1 + Math.hypot(a, b)
+      const [x, y] = [(a - 1) / scale, b / scale]
+      const next = productRe * x - productIm * y
+      productIm = productRe * y + productIm * x
+      productRe = next
+    }
+  }
+  return productRe
+}
+
+/** Where the trivial multiplier is lost among huge ones (a canard), the others say nothing either. */
+const trusted = 0.03
+
+function hasDoubling({ solution: { re, im, trivialError } }: CycleAt): boolean {
+  if (trivialError > trusted) return false
+  return re.some((x, i) => im[i] === 0 && Math.abs(x + 1) < 1e-4)
+}
+
+/** A true pair on the unit circle, not two real multipliers with product 1. */
+function hasPairOnCircle({ solution: { re, im, trivialError } }: CycleAt): boolean {
+  if (trivialError > trusted) return false
+  return re.some((x, i) => (im[i] as number) > 1e-6 && Math.abs(Math.hypot(x, im[i] as number) - 1) < 1e-4)
+}
+
+/** All special points on a stretch, in the order of the walk. */
+export function specialsOn(space: CycleSpace, stretch: Stretch): Special[] {
+  const found: Special[] = []
+  if (foldRate(stretch.a) * foldRate(stretch.b) < 0) {
+    const fold = locateOn(space, stretch, foldRate, 1e-7)
+    if (fold) found.push({ kind: 'fold', ...fold })
+  }
+  if (doublingTest(stretch.a) * doublingTest(stretch.b) < 0) {
+    const doubling = locateOn(space, stretch, doublingTest, 1e-11)
+    if (doubling && hasDoubling(doubling.at)) found.push({ kind: 'period-doubling', ...doubling })
+  }
+  if (space.n > 2 && torusTest(stretch.a) * torusTest(stretch.b) < 0) {
+    const torus = locateOn(space, stretch, torusTest, 1e-11)
+    if (torus && hasPairOnCircle(torus.at)) found.push({ kind: 'torus', ...torus })
+  }
+  return found.sort((a, b) => a.s - b.s)
+}
