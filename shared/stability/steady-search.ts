@@ -88,7 +88,8 @@ export function createSearchSpace(model: SearchableModel, newton: NewtonSpace): 
 /** A box is no longer cut below this, relative to the box of states and to the size of the coordinates. */
 const smallestShare = 1e-12
 const smallestRelative = 1e-8
-const mostUndecided = 200
+/** Judging an undecided place takes singular values, so larger systems are allowed fewer of them. */
+const mostUndecided = (n: number): number => Math.max(3, Math.min(200, 2e4 / n ** 3))
 /** More zeros than this and the search ends: sin(1/x) has no end of them. */
 export const mostZeros = 1000
 /** Off the middle, so that a zero in the middle of a symmetric box does not end up on the corner of all its parts. */
@@ -139,7 +140,7 @@ export function searchBox(
         const radius = reach.map((r, j) => Math.max(r, 2 * ((xhi[j] as number) - (xlo[j] as number))))
         result.undecided.push({ middle: point.slice(), radius })
       }
-      if (reach === null || result.undecided.length >= mostUndecided) {
+      if (reach === null || result.undecided.length >= mostUndecided(n)) {
         result.finished = false
         break
       }
@@ -164,7 +165,8 @@ export function searchBox(
       if (result.undecided.some((place) => liesIn(xlo, xhi, place.middle, place.radius))) return 'done'
       linearisations++
       if (!model.contractBox && excludes(xlo, xhi)) return 'done'
-      state = linearise(interval, system, xlo, xhi) ? 'linear' : 'none'
+      // Across a gap in the domain slopes say nothing about differences of values.
+      state = system.isDefined(xlo, xhi) && linearise(interval, system, xlo, xhi) ? 'linear' : 'none'
       if (state === 'none') return state
       if (isInjective(interval, xlo, xhi)) {
         if (onlyZero(xlo, xhi)) return 'done'
@@ -219,7 +221,12 @@ export function searchBox(
         (grownHi[j] as number) - value <= 2 * ((xhi[j] as number) - (xlo[j] as number)) + 1e-12 * (width[j] as number),
     )
     linearisations++
-    return near && linearise(interval, system, grownLo, grownHi) && isInjective(interval, grownLo, grownHi)
+    return (
+      near &&
+      system.isDefined(grownLo, grownHi) &&
+      linearise(interval, system, grownLo, grownHi) &&
+      isInjective(interval, grownLo, grownHi)
+    )
   }
 
   function isSmall(xlo: Float64Array, xhi: Float64Array): boolean {

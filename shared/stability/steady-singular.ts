@@ -29,7 +29,8 @@ function scaledDecomposition(space: NewtonSpace, p: Float64Array, x: Float64Arra
     }
   }
   model.jacobian(x, p, f, j)
-  space.evaluations += 3
+  // The singular values of a large matrix cost as much as some fifty evaluations and solves.
+  space.evaluations += n > 4 ? 50 : 8
   if (!allFinite(f) || !allFinite(j)) return null
   setRowScale(space)
   for (let i = 0; i < n; i++) rowScale[i] = Math.max(rowScale[i] as number, sizes[i] as number)

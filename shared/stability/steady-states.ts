@@ -97,7 +97,7 @@ export function findSteadyStates(
   // A continuum that Newton meets at once need not spend the search's budget first.
   for (const start of starts.slice(0, 3)) {
     const x = start.slice()
-    if (approach(newton, p, x, 30, null)) list.add(x)
+    if (approach(newton, p, x, 80, null)) list.add(x)
     if (list.continuum) break
   }
   let found: SearchResult = { zeros: [], undecided: [], left: [], finished: false, boxes: 0 }
@@ -138,7 +138,7 @@ function isFiniteAt(newton: NewtonSpace, p: Float64Array, x: Float64Array): bool
 function searchFromStarts(list: StateList, starts: Float64Array[], shouldStop: (() => boolean) | undefined): void {
   const { newton, p } = list
   const cost = list.instructions + newton.n ** 3 / 10
-  const allowance = newton.evaluations + Math.min(6000, 1.5e6 / cost)
+  const allowance = newton.evaluations + Math.min(6000, 1e7 / cost)
   let idle = 0
   for (const start of starts) {
     if (newton.evaluations > allowance || idle > 60 || list.states.length > mostZeros || shouldStop?.()) return

@@ -269,6 +269,15 @@ describe('places where the model is not finite', () => {
     ).toBe(true)
   })
 
+  it('do not hide a second state beyond a gap: x + (x² - 1)^1.5 - 2 has one on each side', () => {
+    // Undefined between -1 and 1. F(-1) = -3 and F(-3) = 17.6; F(1) = -1 and F(3) = 23.6: a change of sign on each side.
+    const result = search('dx/dt = x + (x^2 - 1)^1.5 - 2', { x: [-3, 3] })
+    expect(result).toMatchObject(proved)
+    expect(result.states).toHaveLength(2)
+    for (const [x = 0] of points(result)) expect(x + (x * x - 1) ** 1.5).toBeCloseTo(2, 12)
+    expect(points(result).map(([x = 0]) => Math.sign(x))).toEqual([-1, 1])
+  })
+
   it('include no steady state that is none: tan x - x beside its poles', () => {
     const result = search('dx/dt = tan(x) - x', { x: [2, 10] })
     // First two positive solutions of tan x = x: 4.4934094579, 7.7252518369 (zeros of the spherical Bessel function j1).
