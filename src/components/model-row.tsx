@@ -37,7 +37,7 @@ export function ModelRow({
   return (
     <li className={`model-row ${beside ? 'beside' : ''}`}>
       <div className="of-name min-w-0">
-        <Link to={`/m/${row.code}`} className="covers block font-[640] text-ink no-underline wrap-anywhere">
+        <Link to={`/m/${row.code}`} className="covers block min-h-6 font-[640] text-ink no-underline wrap-anywhere">
           {row.title}
         </Link>
         <p className="text-note text-ink-2">

@@ -18,7 +18,7 @@ export function AdminPage() {
   if (tab !== 'people' && tab !== 'groups') return <Navigate to="/admin/people" replace />
   return (
     <main className="grid grid-cols-[minmax(0,1fr)] content-start gap-3 px-4 py-4 tablet:px-6">
-      <title>Administration · Brinkbook</title>
+      <title>{`${tab === 'people' ? 'People' : 'Groups'} · Administration · Brinkbook`}</title>
       <h1 className="text-title">Administration</h1>
       <SectionBar
         label="Parts of administration"

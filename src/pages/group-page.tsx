@@ -45,7 +45,7 @@ export function GroupPage() {
   const maintainers = members.filter((member) => member.role === 'maintainer')
   return (
     <main className="grid grid-cols-[minmax(0,1fr)] content-start gap-3 px-4 py-3 tablet:px-6">
-      <title>{`${name} · Brinkbook`}</title>
+      <title>{`${onPeople ? `People of ${name}` : name} · Brinkbook`}</title>
       <TitleBlock
         title={name}
         note={role === null ? 'You are not a member.' : `You are a ${roleWord[role].toLowerCase()} here.`}

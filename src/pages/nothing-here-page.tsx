@@ -6,7 +6,7 @@ import { StateSheet } from '#src/components/state-sheet.tsx'
 export function NothingHere({ what }: { what?: string }) {
   return (
     <main className="grid flex-1 place-items-center p-6">
-      <title>Nothing stands here · Brinkbook</title>
+      <title>{`${what === undefined ? 'Nothing stands here' : `No ${what}`} · Brinkbook`}</title>
       <StateSheet
         level={1}
         picture={<Lock aria-hidden className="size-10" strokeWidth={1.5} />}
