@@ -18,7 +18,7 @@ const lists: { title: string; keys: [string, string][] }[] = [
       ['1 to 4', 'sections of the page'],
       ['e', 'edit'],
       ['t', 'drawing or table'],
-      ['Ctrl + Shift + Enter', 'send for review'],
+      ['Ctrl+Shift+Enter', 'send for review'],
     ],
   },
   {

@@ -10,7 +10,7 @@ export const roleWord: Record<MemberRole, string> = {
 export const roleAllows: Record<MemberRole, string> = {
   reader: 'reads every page of the group, drafts too; changes nothing',
   contributor: 'reads, makes pages, edits drafts and sends them for review; approves nothing',
-  maintainer: 'does all that, approves and withdraws what others wrote, and looks after the people',
+  maintainer: 'edits and sends, approves and withdraws what others wrote, looks after the people',
 }
 
 export const roleOptions = (['reader', 'contributor', 'maintainer'] as const).map((value) => ({
