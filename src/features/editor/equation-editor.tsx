@@ -12,6 +12,7 @@ import { equationLanguage } from './highlight.ts'
 import { type LineMessage, lineMessages, setLineMessages } from './line-messages.ts'
 import { type LineValue, lineValues, setLineValues } from './line-values.ts'
 import { remoteCarets } from './remote-carets.ts'
+import { typedOver } from './typed-over.ts'
 
 export interface EquationEditorProps {
   text: Y.Text
@@ -48,6 +49,7 @@ export function EquationEditor({ text, awareness, readOnly, messages, values, na
           drawSelection(),
           EditorView.lineWrapping,
           EditorState.tabSize.of(2),
+          typedOver,
           equationLanguage,
           lineMessages,
           lineValues,
