@@ -1,5 +1,4 @@
-import { type LocatorLabel, locatorLabels } from '#shared/api/sources.ts'
+import { type LinkLabel, linkLabels } from '#shared/model/locators.ts'
 
 /** Whether a label of a document is one that links of the library may have. */
-export const isKnownLabel = (label: string | undefined): label is LocatorLabel =>
-  locatorLabels.some((one) => one === label)
+export const isKnownLabel = (label: string | undefined): label is LinkLabel => linkLabels.some((one) => one === label)

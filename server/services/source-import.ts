@@ -1,15 +1,15 @@
 import type { Transaction } from '#drizzle/client.ts'
 import { AppError } from '#server/http/app-error.ts'
 import * as queries from '#server/queries/sources.ts'
-import type { LocatorLabel } from '#shared/api/sources.ts'
 import type { CitationReference, ModelDocument } from '#shared/model/document.ts'
+import type { LinkLabel } from '#shared/model/locators.ts'
 import { anchorLines } from './anchor-lines.ts'
 import { cleanSources } from './csl.ts'
 import { readDraftDocument } from './draft-document.ts'
 import { keepSource } from './keep-source.ts'
 import { isKnownLabel } from './locators.ts'
 
-type Place = { label: LocatorLabel | null; locator: string | null; quoted: string | null }
+type Place = { label: LinkLabel | null; locator: string | null; quoted: string | null }
 type Target = Place & { target: 'page' | 'parameter' | 'line'; symbol?: string; line?: number }
 
 function placeOf(reference: CitationReference): Place {

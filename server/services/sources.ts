@@ -4,7 +4,8 @@ import type { Compute } from '#server/compute/compute.ts'
 import { AppError } from '#server/http/app-error.ts'
 import * as pageQueries from '#server/queries/pages.ts'
 import * as queries from '#server/queries/sources.ts'
-import type { FormattedSource, LocatorLabel, SourceTarget } from '#shared/api/sources.ts'
+import type { FormattedSource, SourceTarget } from '#shared/api/sources.ts'
+import type { LinkLabel } from '#shared/model/locators.ts'
 import { sameSymbol } from '#shared/stability/summary.ts'
 import { type CleanSource, type CslItem, doiOf, plainReference, titleOf, urlOf, yearOf } from './csl.ts'
 import { type PlacedLink, readDraftDocument } from './draft-document.ts'
@@ -133,7 +134,7 @@ export async function unlink(db: Database, page: PageContext, input: Actor & { l
 export async function link(
   db: Database,
   page: PageContext,
-  input: Actor & { sourceId: number; target: SourceTarget; label?: LocatorLabel; locator?: string; quoted?: string },
+  input: Actor & { sourceId: number; target: SourceTarget; label?: LinkLabel; locator?: string; quoted?: string },
 ): Promise<void> {
   const { sourceId, target, personId, now } = input
   await change(db, page, input, 'source:link', async (tx, row) => {

@@ -1,22 +1,7 @@
 import { z } from 'zod'
+import { linkLabels } from '../model/locators.ts'
 import { id, lineOfText, noContent, none, ofPage, pageCode, text } from './common.ts'
 import { endpoint } from './endpoint.ts'
-
-/** CSL locator labels (Citation Style Language 1.0.2), those that fit an equation or a number. */
-export const locatorLabels = [
-  'page',
-  'equation',
-  'table',
-  'figure',
-  'section',
-  'chapter',
-  'paragraph',
-  'line',
-  'note',
-  'part',
-  'volume',
-] as const
-export type LocatorLabel = (typeof locatorLabels)[number]
 
 export const sourceTarget = z.discriminatedUnion('kind', [
   z.strictObject({ kind: z.literal('page') }),
@@ -33,7 +18,7 @@ export type SourceTarget = z.infer<typeof sourceTarget>
 export const sourceLink = z.object({
   id,
   target: sourceTarget,
-  label: z.enum(locatorLabels).nullable(),
+  label: z.enum(linkLabels).nullable(),
   locator: z.string().nullable(),
   quoted: z.string().nullable(),
 })
@@ -139,7 +124,7 @@ export const linkSource = endpoint({
   query: none,
   body: z.strictObject({
     target: sourceTarget,
-    label: z.enum(locatorLabels).optional(),
+    label: z.enum(linkLabels).optional(),
     locator: text(60).optional(),
     quoted: text(200).optional(),
   }),

@@ -2,6 +2,7 @@ import { z } from 'zod'
 import { issuesToErrors } from './document-issues.ts'
 import type { ModelError } from './errors.ts'
 import { guardValue, isRecord, parseJson } from './json-guard.ts'
+import { locatorLabels } from './locators.ts'
 import { rowsFault } from './tables.ts'
 
 /**
@@ -10,40 +11,6 @@ import { rowsFault } from './tables.ts'
  * is checked by `checkModel` (system.ts).
  */
 const finite = z.number()
-
-/** Locator labels of a citation (CSL 1.0.2, "Locators"). */
-export const locatorLabels = [
-  'act',
-  'appendix',
-  'article-locator',
-  'book',
-  'canon',
-  'chapter',
-  'column',
-  'elocation',
-  'equation',
-  'figure',
-  'folio',
-  'issue',
-  'line',
-  'note',
-  'opus',
-  'page',
-  'paragraph',
-  'part',
-  'rule',
-  'scene',
-  'section',
-  'sub-verbo',
-  'sub verbo',
-  'supplement',
-  'table',
-  'timestamp',
-  'title-locator',
-  'verse',
-  'version',
-  'volume',
-] as const
 
 const located = {
   id: z.string(),

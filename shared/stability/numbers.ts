@@ -17,7 +17,8 @@ export interface NumberStyle {
 /** Rounding error of a computed value, relative: 57.999999999999 is 58, not "57.9 to be safe". */
 const snap = 1e-9
 
-const superscripts = ['⁰', '¹', '²', '³', '⁴', '⁵', '⁶', '⁷', '⁸', '⁹']
+const plainDigits = '-0123456789'
+const raisedDigits = '⁻⁰¹²³⁴⁵⁶⁷⁸⁹'
 
 function exponentOf(size: number): number {
   const exponent = Math.floor(Math.log10(size))
@@ -61,20 +62,40 @@ export function formatNumber(value: number, style: NumberStyle): string {
   return sign + text.replace('.', decimalMark)
 }
 
-function superscript(exponent: number): string {
-  const digits = [...String(Math.abs(exponent))].map((digit) => superscripts[Number(digit)] ?? '').join('')
-  return (exponent < 0 ? '⁻' : '') + digits
+/** An integer in raised digits: -6 is "⁻⁶". */
+export function superscript(exponent: number): string {
+  return [...String(exponent)].map((digit) => raisedDigits.charAt(plainDigits.indexOf(digit))).join('')
 }
 
-const secondsIn: Readonly<Record<string, number>> = { ms: 1e-3, s: 1, min: 60, h: 3600, d: 86400 }
+/** Raised digits as plain ones, with the true minus sign: "⁻⁶" is "−6". Other characters are left out. */
+export function fromSuperscript(raised: string): string {
+  const digits = [...raised].map((digit) => plainDigits.charAt(raisedDigits.indexOf(digit)))
+  return digits.join('').replace('-', '\u2212')
+}
+
+const secondsIn = new Map([
+  ['ms', 1e-3],
+  ['s', 1],
+  ['min', 60],
+  ['h', 3600],
+  ['d', 86_400],
+])
+
+/**
+ * Cycles of an angular frequency (radians per time unit): per second (`hertz`) where the time unit is one of ms, s, min,
+ * h or d, else per time unit of the model.
+ */
+export function cyclesOf(omega: number, timeUnit: string | null): { value: number; hertz: boolean } {
+  const cycles = omega / (2 * Math.PI)
+  const seconds = timeUnit === null ? undefined : secondsIn.get(timeUnit)
+  return seconds === undefined ? { value: cycles, hertz: false } : { value: cycles / seconds, hertz: true }
+}
 
 /**
  * An angular frequency (radians per time unit) as people read it: hertz where the time unit is known, else cycles per
  * time unit. Rounded to the nearest, as frequencies are.
  */
 export function formatFrequency(omega: number, timeUnit: string | null, style: Omit<NumberStyle, 'rounding'>): string {
-  const cycles = omega / (2 * Math.PI)
-  const seconds = timeUnit === null ? undefined : Object.hasOwn(secondsIn, timeUnit) ? secondsIn[timeUnit] : undefined
-  if (seconds !== undefined) return `${formatNumber(cycles / seconds, style)} Hz`
-  return `${formatNumber(cycles, style)} per ${timeUnit ?? 'time unit'}`
+  const { value, hertz } = cyclesOf(omega, timeUnit)
+  return `${formatNumber(value, style)} ${hertz ? 'Hz' : `per ${timeUnit ?? 'time unit'}`}`
 }

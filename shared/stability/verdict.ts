@@ -3,7 +3,7 @@ import type { Complex } from '#shared/numerics/complex.ts'
 import { correct, sampleAt } from './corrector.ts'
 import { nearestPair } from './eigenvalue-tracks.ts'
 import type { Forms } from './forms.ts'
-import { controlOf, type Frame, place } from './frame.ts'
+import { type Frame, place } from './frame.ts'
 import type { BranchHopf } from './hopf.ts'
 import { type CriticalPair, criticalPair, cubicTerm, eigenvalueRate } from './normal-form.ts'
 import { secondLyapunov } from './second-lyapunov.ts'
@@ -172,9 +172,4 @@ export function withoutPair(s: Spectrum, omega: number): Spectrum {
   const lower = nearest(-omega, upper)
   const keep = (_: number, i: number): boolean => i !== upper && i !== lower
   return { n: s.n - 2, re: s.re.filter(keep), im: s.im.filter(keep), size: s.size }
-}
-
-/** Control value of a located point, in model units. */
-export function controlAt(frame: Frame, point: BranchHopf): number {
-  return controlOf(frame, point.sample.z)
 }

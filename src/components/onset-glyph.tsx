@@ -1,13 +1,9 @@
+import { kindHue, kindTitle } from '#src/lib/kind-words.ts'
+
 export const glyphKinds = ['hard', 'soft', 'undecided', 'none', 'split'] as const
 export type GlyphKind = (typeof glyphKinds)[number]
 
-const hue: Record<GlyphKind, string> = {
-  hard: 'text-hard',
-  soft: 'text-soft',
-  undecided: 'text-open',
-  none: 'text-ink',
-  split: 'text-ink',
-}
+const hue: Record<GlyphKind, string> = { ...kindHue, split: 'text-ink' }
 
 function Shape({ kind }: { kind: GlyphKind }) {
   switch (kind) {
@@ -67,21 +63,14 @@ export function OnsetGlyph({ kind, size = 20, faded = false }: { kind: GlyphKind
   )
 }
 
-/** The word of a kind, as facets, rows and tables use it. */
-export const kindWord: Record<GlyphKind, string> = {
-  hard: 'Hard',
-  soft: 'Soft',
-  undecided: 'Undecided',
-  none: 'No onset',
-  split: 'Hard or soft',
-}
+const title: Record<GlyphKind, string> = { ...kindTitle, split: 'Hard or soft' }
 
 /** Glyph and word together, in the hue of the kind. `word` where the kind's own does not say it all. */
 export function OnsetWord({ kind, size = 20, word }: { kind: GlyphKind; size?: number; word?: string }) {
   return (
     <span className="inline-flex items-center gap-2">
       <OnsetGlyph kind={kind} size={size} />
-      <span className={`font-[620] ${kind === 'none' ? 'text-ink-2' : hue[kind]}`}>{word ?? kindWord[kind]}</span>
+      <span className={`font-[620] ${kind === 'none' ? 'text-ink-2' : hue[kind]}`}>{word ?? title[kind]}</span>
     </span>
   )
 }

@@ -1,18 +1,12 @@
-import type { OnsetKind, PageRow } from '#shared/api/pages.ts'
-import { formatNumber } from '#shared/stability/numbers.ts'
+import type { PageRow } from '#shared/api/pages.ts'
+import { readerNumber } from './figures.ts'
+import { kindTurns, kindWord } from './kind-words.ts'
 import { onsetText, standsOnGround } from './onset-figures.ts'
-
-const draftTurns: Record<OnsetKind, string> = {
-  hard: 'Draft turns it hard',
-  soft: 'Draft turns it soft',
-  undecided: 'Draft leaves it undecided',
-  none: 'Draft has no onset in range',
-}
 
 /** The one line a row adds to its figures: what a reader of the figures alone would miss. Null where they say it all. */
 export function rowNote(row: Pick<PageRow, 'card' | 'draftKind'>): string | null {
   const { card, draftKind } = row
-  const draft = draftKind === null ? null : draftTurns[draftKind]
+  const draft = draftKind === null ? null : `Draft ${kindTurns[draftKind].verb} it ${kindTurns[draftKind].word}`
   if (!card) return draft
   const running = card.control.value
   if (card.ground.length === 0) return joined('Nowhere steady in its range', draft)
@@ -44,11 +38,11 @@ function edgeNote(card: NonNullable<PageRow['card']>, running: number): string |
   )
   if (opposite) {
     const kind = opposite.verdict === 'hard' || opposite.verdict === 'soft' ? opposite.verdict : 'undecided'
-    return `Two limits: ${kind} at ${onsetText(opposite)} from ${opposite.direction > 0 ? 'above' : 'below'}`
+    return `Two limits: ${kindWord[kind]} at ${onsetText(opposite)} from ${opposite.direction > 0 ? 'above' : 'below'}`
   }
   const [first, second, ...more] = card.ground
   if (first && second && more.length === 0) {
-    return `Unstable from ${onsetText({ p: first.to, direction: 1 })} to ${formatNumber(second.from, { digits: 4, rounding: 'up' })}`
+    return `Unstable from ${onsetText({ p: first.to, direction: 1 })} to ${readerNumber(second.from, { digits: 4, rounding: 'up' })}`
   }
   return null
 }

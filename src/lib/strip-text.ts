@@ -1,5 +1,6 @@
 import type { CardSummary } from '#shared/api/pages.ts'
 import { shortFigure } from './figures.ts'
+import { kindTitle } from './kind-words.ts'
 
 /** What an edge strip shows, in words, for those who do not see it. */
 export function stripText(card: CardSummary): string {
@@ -13,7 +14,7 @@ export function stripText(card: CardSummary): string {
     parts.push(`Stable from ${stretches.join(', and from ')}.`)
   }
   for (const onset of card.onsets.filter((candidate) => candidate.operating)) {
-    const kind = onset.verdict === 'hard' ? 'Hard' : onset.verdict === 'soft' ? 'Soft' : 'Undecided'
+    const kind = kindTitle[onset.verdict === 'hard' || onset.verdict === 'soft' ? onset.verdict : 'undecided']
     const side = onset.direction > 0 ? 'rising' : 'falling'
     parts.push(`${kind} onset at ${shortFigure(onset.p)}, ${side}.`)
   }

@@ -68,7 +68,7 @@ describe('note of a row', () => {
 
   test('a draft that changes the verdict says so', () => {
     expect(note(summary(), 'hard')).toBe('Draft turns it hard')
-    expect(note(null, 'none')).toBe('Draft has no onset in range')
+    expect(note(null, 'none')).toBe('Draft leaves it without an onset in range')
   })
 
   test('a model that is not steady where it runs says that first, and the draft all the same', () => {

@@ -1,5 +1,6 @@
 import { useRef, useState } from 'react'
-import { type FormattedSource, locatorLabels, type SourceTarget } from '#shared/api/sources.ts'
+import type { FormattedSource, SourceTarget } from '#shared/api/sources.ts'
+import { linkLabels } from '#shared/model/locators.ts'
 import { useLinkSource } from '#src/api/sources.ts'
 import { Button, LinkButton } from '#src/components/button.tsx'
 import { FaultText, Field } from '#src/components/field.tsx'
@@ -14,7 +15,7 @@ export interface LinkTargets {
 
 const labels = [
   { value: '', label: 'no locator' },
-  ...locatorLabels.map((value) => ({ value: value as string, label: value as string })),
+  ...linkLabels.map((value) => ({ value: value as string, label: value as string })),
 ]
 
 /** Attaches a source to a parameter or an equation line, with where in the source it stands and what it says there. */
@@ -49,7 +50,7 @@ export function LinkSource({ code, source, targets }: { code: string; source: Fo
         event.preventDefault()
         const to = chosen()
         if (!to) return
-        const found = locatorLabels.find((candidate) => candidate === label)
+        const found = linkLabels.find((candidate) => candidate === label)
         link.mutate(
           {
             source: source.id,

@@ -1,10 +1,9 @@
 import { useMemo, useState } from 'react'
 import { Cell, Row, Table } from '#src/components/table.tsx'
 import { classes } from '#src/lib/class-names.ts'
-import { FigureText } from './figure-text.tsx'
 import { type BranchRow, branchRows, type SortKey, sortedRows } from './geometry/branch-rows.ts'
 import { eigenTexts } from './geometry/eigen-text.ts'
-import { figure, observedFigure, rateUnit, signedFigure } from './geometry/figures.ts'
+import { copiedFigure, copiedObserved, copiedText, rateUnit } from './geometry/figures.ts'
 import type { CardGeometry } from './geometry/scene.ts'
 import { nameOf, type Quantity } from './geometry/subject.ts'
 
@@ -69,14 +68,12 @@ export function BranchTable({ geometry, older }: { geometry: CardGeometry; older
         {rows.map((row) => (
           <Row key={row.key} className={row.event ? 'bg-well' : undefined}>
             <Cell className="figures px-3 py-1 text-note">
-              {row.event ? row.event.text : figure(row.p, copied)}
+              {row.event ? copiedText(row.event.text) : copiedFigure(row.p, copied)}
               {row.event && <span className="ml-2 font-sans font-[620]">{row.event.name}</span>}
             </Cell>
+            <Cell className="figures px-3 py-1 text-note">{copiedObserved(row.value, subject, copied)}</Cell>
             <Cell className="figures px-3 py-1 text-note">
-              <FigureText text={observedFigure(row.value, subject, copied)} />
-            </Cell>
-            <Cell className="figures px-3 py-1 text-note">
-              <FigureText text={row.growth === null ? 'none' : signedFigure(row.growth, 4)} />
+              {row.growth === null ? 'none' : copiedFigure(row.growth, 4)}
             </Cell>
             <Cell className="px-3 py-1">{stableText(row)}</Cell>
           </Row>
@@ -109,13 +106,13 @@ export function EigenTable({ geometry, branch }: { geometry: CardGeometry; branc
         {rows.map((row) => (
           <Row key={row.key}>
             <Cell className="figures px-2 py-1 align-top text-note">
-              {row.event ? row.event.text : figure(row.p, 4)}
+              {row.event ? copiedText(row.event.text) : copiedFigure(row.p, 4)}
             </Cell>
             <Cell className="figures px-2 py-1 text-note">
               {eigenTexts(row.eigenvalues).map(({ text }, i) => (
                 // biome-ignore lint/suspicious/noArrayIndexKey: equal eigenvalues are told apart by nothing else
                 <span key={`${text} ${i}`} className="mr-3 inline-block whitespace-nowrap">
-                  {text}
+                  {copiedText(text)}
                 </span>
               ))}
             </Cell>

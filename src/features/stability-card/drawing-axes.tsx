@@ -1,13 +1,12 @@
+import { superscript } from '#shared/stability/numbers.ts'
 import type { Axis, Frame } from './geometry/frame.ts'
 import type { Quantity } from './geometry/subject.ts'
 import { SvgSymbol } from './svg-symbol.tsx'
 
-const raised = new Map([...'-0123456789'].map((character, i) => [character, '⁻⁰¹²³⁴⁵⁶⁷⁸⁹'.charAt(i)]))
-
 /** The unit the axis numbers are in: "mm", "10³ mm", or "10³" for a pure number. */
 export function axisUnit(unit: string, axis: Axis): string {
   if (axis.exponent === 0) return unit
-  const power = [...String(axis.exponent)].map((character) => raised.get(character) ?? '').join('')
+  const power = superscript(axis.exponent)
   return unit ? `10${power} ${unit}` : `in 10${power}`
 }
 

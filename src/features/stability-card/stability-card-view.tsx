@@ -5,6 +5,7 @@ import type { ModelError } from '#shared/model/errors.ts'
 import { verdictWords } from '#shared/stability/sentences.ts'
 import { type DescribedModel, summarise } from '#shared/stability/summary.ts'
 import { Button } from '#src/components/button.tsx'
+import { decimalMark } from '#src/lib/decimal-mark.ts'
 import { clockOf } from '#src/lib/times.ts'
 import { CardBehaviour } from './card-behaviour.tsx'
 import { EmptyDrawing, FaultNote } from './card-state.tsx'
@@ -76,7 +77,7 @@ export function StabilityCardView(props: StabilityCardViewProps) {
 function Shown(props: StabilityCardViewProps & { document: PageDocument; card: StabilityCard; id: string }) {
   const { document, card, state, computedAt = null, onSetValue, mayEdit = false, earlier = null, level = 2, id } = props
   const geometry = useMemo(() => geometryOf(document, card), [document, card])
-  const words = useMemo(() => verdictWords(card, document), [card, document])
+  const words = useMemo(() => verdictWords(card, document, { decimalMark }), [card, document])
   const main = useMemo(() => summarise(document, card).main, [document, card])
   const earlierGeometry = useMemo(
     () => (earlier ? { geometry: geometryOf(earlier.document, earlier.card), label: earlier.label } : null),

@@ -3,6 +3,7 @@ import { verdictWords } from '#shared/stability/sentences.ts'
 import type { DescribedModel } from '#shared/stability/summary.ts'
 import { OnsetGlyph } from '#src/components/onset-glyph.tsx'
 import { classes } from '#src/lib/class-names.ts'
+import { decimalMark } from '#src/lib/decimal-mark.ts'
 import { glyphsOf, verdictHues } from './geometry/verdict.ts'
 
 /** Glyph and headline in one line of 48 px, to stay in sight where model and behaviour stand one above the other. */
@@ -17,7 +18,7 @@ export function VerdictBar({
   older?: boolean
   className?: string
 }) {
-  const words = verdictWords(card, document)
+  const words = verdictWords(card, document, { decimalMark })
   const { kindWord, rest } = words.headline
   return (
     <p className={classes('flex min-h-12 items-center gap-3 bg-sheet px-4', older && 'card-older-words', className)}>

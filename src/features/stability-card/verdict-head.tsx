@@ -4,6 +4,7 @@ import { type VerdictKind, type VerdictWords, verdictWords } from '#shared/stabi
 import type { DescribedModel } from '#shared/stability/summary.ts'
 import { OnsetGlyph } from '#src/components/onset-glyph.tsx'
 import { classes } from '#src/lib/class-names.ts'
+import { decimalMark } from '#src/lib/decimal-mark.ts'
 import { glyphsOf, verdictHues as hues, kindWords } from './geometry/verdict.ts'
 
 export interface VerdictHeadProps {
@@ -19,7 +20,7 @@ export interface VerdictHeadProps {
 }
 
 function Was({ earlier, now }: { earlier: NonNullable<VerdictHeadProps['earlier']>; now: VerdictKind }) {
-  const words = verdictWords(earlier.card, earlier.document)
+  const words = verdictWords(earlier.card, earlier.document, { decimalMark })
   if (words.kind === now) return null
   return (
     <p className="border-l border-rule pl-3.5 text-label text-ink-2">

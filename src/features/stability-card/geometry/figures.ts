@@ -1,5 +1,7 @@
 import type { HopfPoint } from '#shared/model/card-document.ts'
-import { formatFrequency, formatNumber, type Rounding } from '#shared/stability/numbers.ts'
+import { fromSuperscript, type Rounding } from '#shared/stability/numbers.ts'
+import { decimalMark, withDecimalMark } from '#src/lib/decimal-mark.ts'
+import { readerFrequency, readerNumber } from '#src/lib/figures.ts'
 import type { Subject } from './subject.ts'
 
 /** Digits a value of the control carries: those of the list rows and the sentence, so that one onset is one number. */
@@ -9,7 +11,7 @@ const digits = 3
 
 /** A value of the control as the drawing prints it. What is smaller than a billionth of the range is zero. */
 export function controlFigure(value: number, { control }: Subject, rounding: Rounding = 'nearest'): string {
-  return formatNumber(value, { digits: digitsFor(value, control), rounding, noise: noiseOf(control) })
+  return readerNumber(value, { digits: digitsFor(value, control), rounding, noise: noiseOf(control) })
 }
 
 const noiseOf = (range: { low: number; high: number }) => 1e-9 * (range.high - range.low)
@@ -32,10 +34,10 @@ function digitsFor(value: number, range: { low: number; high: number }): number 
 export function gapFigure(gap: number, beside: string, subject: Subject): string | null {
   if (gap <= noiseOf(subject.control)) return null
   if (beside.includes('×')) return controlFigure(gap, subject, 'down')
-  const decimals = beside.split('.')[1]?.length ?? 0
+  const decimals = beside.split(decimalMark)[1]?.length ?? 0
   const factor = 10 ** decimals
   const cut = Math.floor(gap * factor * (1 + 1e-9)) / factor
-  return cut > 0 ? cut.toFixed(decimals) : controlFigure(gap, subject, 'down')
+  return cut > 0 ? withDecimalMark(cut.toFixed(decimals)) : controlFigure(gap, subject, 'down')
 }
 
 /**
@@ -48,12 +50,34 @@ export function safeSide(point: Pick<HopfPoint, 'crossing' | 'operating'>): Roun
 }
 
 /** A number of any other kind: three significant digits, to the nearest. */
-export const figure = (value: number, count: number = digits): string => formatNumber(value, { digits: count })
+export const figure = (value: number, count: number = digits): string => readerNumber(value, { digits: count })
 
 /** A value of the observed quantity; what is rounding of its box is zero. */
 export function observedFigure(value: number, { box }: Subject, count: number = digits): string {
-  return formatNumber(value, { digits: count, noise: box ? 1e-12 * (box.high - box.low) : 0 })
+  return readerNumber(value, { digits: count, noise: boxNoise(box) })
 }
+
+/**
+ * A number of a table that people copy from: ASCII minus and point, e-notation where a power of ten is needed, so that
+ * any program reads it. What is not larger than `noise` is zero.
+ */
+export function copiedFigure(value: number, count: number, noise = 0): string {
+  if (!Number.isFinite(value)) return ''
+  return Math.abs(value) <= noise ? '0' : String(Number(value.toPrecision(count)))
+}
+
+/** A figure's text for copying: with ASCII minus and point, whatever the reader's own are. */
+export const copiedText = (text: string): string =>
+  text
+    .replaceAll('\u2212', '-')
+    .replaceAll(decimalMark, '.')
+    .replaceAll(/ ?× ?10([⁻⁰¹²³⁴⁵⁶⁷⁸⁹]+)/g, (_, power: string) => `e${fromSuperscript(power).replace('\u2212', '-')}`)
+
+/** A value of the observed quantity for copying; what is rounding of its box is zero. */
+export const copiedObserved = (value: number, { box }: Subject, count: number): string =>
+  copiedFigure(value, count, boxNoise(box))
+
+const boxNoise = (box: Subject['box']) => (box ? 1e-12 * (box.high - box.low) : 0)
 
 /** With its sign, for coefficients and rates, where the sign is the message. */
 export function signedFigure(value: number, count: number = digits): string {
@@ -62,7 +86,7 @@ export function signedFigure(value: number, count: number = digits): string {
 
 /** "2.32 Hz", or cycles per time unit where the time unit is not known. */
 export const frequencyFigure = (omega: number, { timeUnit }: Subject): string =>
-  formatFrequency(omega, timeUnit === '' ? null : timeUnit, { digits })
+  readerFrequency(omega, timeUnit === '' ? null : timeUnit, digits)
 
 /** "14.6 rad/s" or "14.6 rad per time unit". */
 export const angularFigure = (omega: number, { timeUnit }: Subject): string =>

@@ -1,4 +1,5 @@
 import { scaleLinear } from 'd3-scale'
+import { withDecimalMark } from '#src/lib/decimal-mark.ts'
 import { type Box, pixel } from './points.ts'
 import { figuresWidth } from './text-width.ts'
 
@@ -39,7 +40,7 @@ export function axisBetween(low: number, high: number, from: number, to: number,
     high: b,
     toPixel,
     fromPixel: (position) => scale.invert(position) * 2,
-    ticks: values.map((value) => ({ at: toPixel(value * factor), text: format(value) })),
+    ticks: values.map((value) => ({ at: toPixel(value * factor), text: withDecimalMark(format(value)) })),
     exponent,
   }
 }

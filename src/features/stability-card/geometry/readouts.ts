@@ -1,5 +1,5 @@
 import type { HopfPoint } from '#shared/model/card-document.ts'
-import { formatNumber } from '#shared/stability/numbers.ts'
+import { readerNumber } from '#src/lib/figures.ts'
 import { type CardEvent, lookOf } from './events.ts'
 import {
   angularFigure,
@@ -31,7 +31,7 @@ export interface Readout {
 function errorText({ cubic, cubicError }: HopfPoint): string {
   return cubicError === null || cubicError <= 5e-4 * Math.abs(cubic ?? 0)
     ? ''
-    : `± ${formatNumber(cubicError, { digits: 1, rounding: 'up' })}`
+    : `± ${readerNumber(cubicError, { digits: 1, rounding: 'up' })}`
 }
 
 function cubicNote(point: HopfPoint): string {

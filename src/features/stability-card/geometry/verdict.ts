@@ -1,23 +1,19 @@
 import type { StabilityCard } from '#shared/model/card-document.ts'
 import type { VerdictKind } from '#shared/stability/sentences.ts'
+import { kindHue, kindWord } from '#src/lib/kind-words.ts'
 
 export type Glyph = 'hard' | 'soft' | 'undecided' | 'none'
 
 /** Hue of a kind, as a class: only soft, hard and undecided onsets have one. */
 export const verdictHues: Record<VerdictKind, string> = {
-  hard: 'text-hard',
-  soft: 'text-soft',
-  undecided: 'text-open',
+  ...kindHue,
   limit: 'text-ink',
-  none: 'text-ink',
   unstable: 'text-ink',
 }
 
 /** The word of a kind inside a sentence: "was soft". */
 export const kindWords: Record<VerdictKind, string> = {
-  hard: 'hard',
-  soft: 'soft',
-  undecided: 'undecided',
+  ...kindWord,
   limit: 'limited by a turning point or branch point',
   none: 'without onset',
   unstable: 'already unstable',
