@@ -103,23 +103,27 @@ export function locateOn(
   let atHigh = g(stretch.b)
   if (!(atLow * atHigh < 0)) return null
   let best: { at: CycleAt; s: number; size: number } | null = null
+  // the end that stays twice in a row is halved
+  let last: 'low' | 'high' | null = null
   for (let trial = 0; trial < 14; trial++) {
     const share = atLow / (atLow - atHigh)
-    const s = low + (high - low) * Math.min(0.98, Math.max(0.02, share))
+    const s = low + (high - low) * Math.min(0.999, Math.max(0.001, share))
     const at = pointOn(space, stretch, s)
     if (!at) return best
     const value = g(at)
     if (!best || Math.abs(value) < best.size) best = { at, s, size: Math.abs(value) }
     if (Math.abs(value) < small || high - low < 1e-13) return best
-    if (value * atLow > 0) {
+    const side = value * atLow > 0 ? 'low' : 'high'
+    if (side === 'low') {
       low = s
       atLow = value
-      atHigh /= 2
+      if (last === side) atHigh /= 2
     } else {
       high = s
       atHigh = value
-      atLow /= 2
+      if (last === side) atLow /= 2
     }
+    last = side
   }
   return best
 }

@@ -102,20 +102,23 @@ function zeroOf(g: (s: number) => number, a: number, b: number): number | null {
   let atLow = g(low)
   let atHigh = g(high)
   if (!(atLow >= 0 && atHigh <= 0) || atLow === atHigh) return null
+  let last: 'low' | 'high' | null = null
   for (let pass = 0; pass < 12; pass++) {
-    // Illinois rule: the end that stays is halved
+    // Illinois rule: the end that stays twice in a row is halved
     const s = low + ((high - low) * atLow) / (atLow - atHigh)
     const value = g(s)
     if (Math.abs(high - low) < 1e-9 || value === 0) return s
-    if (value > 0) {
+    const side = value > 0 ? 'low' : 'high'
+    if (side === 'low') {
       low = s
       atLow = value
-      atHigh /= 2
+      if (last === side) atHigh /= 2
     } else {
       high = s
       atHigh = value
-      atLow /= 2
+      if (last === side) atLow /= 2
     }
+    last = side
   }
   return (low + high) / 2
 }
