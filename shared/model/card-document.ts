@@ -121,6 +121,7 @@ export const warningCodes = [
   'budget-spent',
   'no-steady-state',
   'no-window',
+  'no-second-control',
 ] as const
 
 export const cardWarning = z.object({
@@ -198,6 +199,10 @@ export const stabilityCard = z.object({
           kind: z.enum(['changeover', 'zero-hopf', 'double-zero', 'double-hopf', 'cusp']),
           p: finite,
           s: finite,
+          /** Of the onset there; absent at cusps and where it is zero. */
+          omega: finite.optional(),
+          /** At changeovers; null where a resonance leaves it undefined. */
+          secondLyapunov: finite.nullable().optional(),
         }),
       ),
     })

@@ -213,5 +213,4 @@ export function warnOfNoWindow(reason: NoWindow, warnings: WarningList): void {
 export function warnOfMissingParts(parts: ReadonlySet<CardPart>, warnings: WarningList): void {
   const tell = (message: string): void => warnings.add({ code: 'budget-spent', message })
   if (parts.has('cycles')) tell('Cycle branches are not computed by this version.')
-  if (parts.has('map')) tell('The map of two parameters is not computed by this version.')
 }

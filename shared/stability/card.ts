@@ -29,6 +29,7 @@ import { engineVersion } from './engine.ts'
 import { createForms, type Forms } from './forms.ts'
 import { createFrame, type Frame, scaled } from './frame.ts'
 import { findHopfPoints, samePoint } from './hopf.ts'
+import { mapOfPlane, type PlaneMap } from './map/map-of-plane.ts'
 import type { CardStage } from './messages.ts'
 import { markRealCrossings } from './real-crossings.ts'
 import { sensitivitiesOf } from './sensitivity.ts'
@@ -43,8 +44,10 @@ export interface AnalyseOptions {
   onProgress?: (stage: CardStage, share: number) => void
   /** Asked at least every 50 ms; `true` ends the analysis with what there is. */
   shouldStop?: () => boolean
-  /** Handed the card as soon as it is complete but for the sensitivities, which take longest. */
+  /** Handed the card before each of the parts that take longest, complete but for them: the sensitivities, then the map. */
   onCard?: (card: StabilityCard) => void
+  /** Handed the map as it grows, curve by curve. */
+  onMap?: (map: PlaneMap) => void
 }
 
 export type AnalyseResult = { ok: true; card: StabilityCard } | { ok: false; errors: ModelError[] }
@@ -82,16 +85,23 @@ export function analyse(document: unknown, options: AnalyseOptions = {}): Analys
   } as const
   const { body, operating } = partsOf(analysis, parts, warnings, options)
   warnOfMissingParts(parts, warnings)
-  const card = { ...head, ...body, warnings: warnings.list() }
-  if (!parts.has('hopf')) return { ok: true, card }
-  options.onCard?.(card)
+  let card: StabilityCard = { ...head, ...body, warnings: warnings.list() }
   const { frame } = analysis
-  const sensitivity = operating.flatMap((hopf, i) => {
-    options.onProgress?.('sensitivity', i / operating.length)
-    return sensitivitiesOf(frame, hopf)
-  })
-  if (frame.budget.spent()) warnOfSpentBudget(warnings)
-  return { ok: true, card: { ...card, sensitivity, warnings: warnings.list() } }
+  if (parts.has('hopf')) {
+    options.onCard?.(card)
+    const sensitivity = operating.flatMap((hopf, i) => {
+      options.onProgress?.('sensitivity', i / operating.length)
+      return sensitivitiesOf(frame, hopf)
+    })
+    if (frame.budget.spent()) warnOfSpentBudget(warnings)
+    card = { ...card, sensitivity, warnings: warnings.list() }
+  }
+  if (parts.has('map')) {
+    options.onCard?.(card)
+    const map = mapOfPlane(frame.model, warnings, options)
+    card = { ...card, ...(map ? { map } : {}), warnings: warnings.list() }
+  }
+  return { ok: true, card }
 }
 
 /** What was computed, before it is put into the card's words. */
