@@ -161,7 +161,7 @@ export class Connection implements Member {
     const { room, access } = this
     if (!room || !access || !this.open) return
     const byPolicy = stateByPolicy(access)
-    const byRoom = room.notSaving ? 'not-saving' : room.full || this.full ? 'full' : 'live'
+    const byRoom = room.notSaving ? 'not-saving' : room.full ? 'no-room' : this.full ? 'full' : 'live'
     const state = byPolicy === 'live' ? byRoom : byPolicy
     if (state === this.told) return
     const could = this.takesEdits
@@ -303,6 +303,9 @@ export class Connection implements Member {
         this.setFull(false)
         return
       case 'full':
+        // The room has told everybody.
+        this.behind = true
+        return
       case 'text-full':
         this.behind = true
         this.setFull(true)

@@ -54,7 +54,7 @@ export const collabLimits = {
     cell: 2000,
     setting: 20_000,
     rowId: 64,
-    /** The encoded document. Within `stateMargin` of it the room is full. */
+    /** The encoded document. Within `stateMargin` of it there is no room for more edits. */
     state: 2 * kibi * kibi,
     stateMargin: 64 * kibi,
     /** Length of one deleted stretch, in clock steps. */

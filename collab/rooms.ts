@@ -108,7 +108,7 @@ export class Room {
     return this.failing
   }
 
-  /** True where the document has reached its size limit. */
+  /** True where the document with all its steps has reached its size limit: nothing is taken until a new generation. */
   get full(): boolean {
     return this.tooLarge
   }

@@ -25,9 +25,11 @@ export const collabPath = '/collab'
 
 /**
  * live: edits are taken. read-only: a reader. locked: a review is under way. not-saving: the database does not answer;
- * typing is held back. full: the size limit is reached; what is over it is not taken, taking text away helps.
+ * typing is held back. full: the equation block's size limit is reached; what is over it is not taken, taking text away
+ * helps. no-room: the document with all its steps has reached its limit; nothing is taken, deletions neither (they are
+ * steps too), until a new generation begins.
  */
-export const roomStates = ['live', 'read-only', 'locked', 'not-saving', 'full'] as const
+export const roomStates = ['live', 'read-only', 'locked', 'not-saving', 'full', 'no-room'] as const
 export type RoomState = (typeof roomStates)[number]
 
 /** What message 101 says: may this socket edit, and which generation of the draft it is joined to. */
@@ -55,7 +57,7 @@ export const closeCodes = {
   noSuchRoom: 4404,
   /** Edits arrived that depend on edits the server never saw; reload. */
   orphaned: 4409,
-  /** The draft's generation ended (approved, or its shape changed): reload, unsent edits are offered as lines. */
+  /** The draft's generation ended (approved, begun anew, or its shape changed): reload, unsent edits are offered as lines. */
   generationClosed: 4410,
   tooMany: 4429,
   loadFailed: 4500,

@@ -18,6 +18,8 @@ const lists: { title: string; keys: [string, string][] }[] = [
       ['1 to 4', 'sections of the page'],
       ['e', 'edit'],
       ['t', 'drawing or table'],
+      ['Ctrl+Enter', 'run the analysis again'],
+      ['Ctrl+Z', 'take your last edit back'],
       ['Ctrl+Shift+Enter', 'send for review'],
     ],
   },

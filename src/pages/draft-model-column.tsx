@@ -1,12 +1,16 @@
-import { type ReactNode, useMemo, useState } from 'react'
+import { type ReactNode, useMemo, useRef, useState } from 'react'
 import { Segments } from '#src/components/segments.tsx'
 import type { DraftConnection } from '#src/features/editor/draft-connection.ts'
+import { useDraftHistory, useHistoryKeys } from '#src/features/editor/draft-history.ts'
 import { EquationEditor } from '#src/features/editor/equation-editor.tsx'
+import { FaultList, focusPlace, unplacedFaults } from '#src/features/editor/fault-list.tsx'
+import { changedLines } from '#src/features/editor/line-changes.ts'
 import { ParameterTable } from '#src/features/editor/parameter-table.tsx'
 import { SettingsFields } from '#src/features/editor/settings-fields.tsx'
 import { StateTable } from '#src/features/editor/state-table.tsx'
 import { useDraftContent } from '#src/features/editor/use-draft-content.ts'
 import { EquationLines, Formula } from '#src/features/revisions/equation-lines.tsx'
+import { phoneWidth, useMediaQuery } from '#src/hooks/use-media-query.ts'
 import { shortFigure } from '#src/lib/figures.ts'
 import type { CardState } from '#src/workers/card-runner.ts'
 import { changedSymbols, faultsByPath, messagesOf, valuesOf } from './draft-notes.ts'
@@ -25,6 +29,10 @@ export function DraftModelColumn({ connection, live, readOnly, earlier }: DraftM
   const content = useDraftContent(doc)
   const [shape, setShape] = useState<'typed' | 'typeset'>('typed')
   const [line, setLine] = useState(1)
+  const column = useRef<HTMLElement>(null)
+  const history = useDraftHistory(doc)
+  useHistoryKeys(column, history, !readOnly)
+  const narrow = useMediaQuery(phoneWidth)
   const checked = live.checked
   const faults = useMemo(() => faultsByPath(checked?.errors ?? []), [checked])
   const messages = useMemo(() => messagesOf(live), [live])
@@ -42,11 +50,20 @@ export function DraftModelColumn({ connection, live, readOnly, earlier }: DraftM
     [content.parameters, content.states, checked],
   )
   const changed = useMemo(() => changedSymbols(content.parameters, earlier), [content.parameters, earlier])
+  const changedEquations = useMemo(
+    () => earlier && { lines: changedLines(earlier.document.equations, content.equations), mark: earlier.mark },
+    [content.equations, earlier],
+  )
+  const goTo = (place: string) => {
+    if (place === 'equations') setShape('typed')
+    // The block is only there to be focused once it is shown.
+    requestAnimationFrame(() => column.current && focusPlace(column.current, place))
+  }
   const atCaret = checked?.lines.find((entry) => entry.line === line && entry.tex !== null)
   const document = live.card?.document
   const control = document?.parameters.find((row) => row.symbol === document.control)
   return (
-    <section aria-label="Model" className="sheet grid min-w-0 content-start">
+    <section ref={column} aria-label="Model" className="sheet grid min-w-0 content-start">
       <header className="flex flex-wrap items-center justify-between gap-2 px-4 py-2.5">
         <h2 className="text-subtitle">Equations</h2>
         <Segments
@@ -63,10 +80,18 @@ export function DraftModelColumn({ connection, live, readOnly, earlier }: DraftM
         )}
       </header>
       <div hidden={shape !== 'typed'}>
+        {narrow && !readOnly && (
+          <p className="px-4 pb-2 text-note text-ink-2">
+            Equations are read only in a window this narrow: a line has to be seen whole to be changed. Tables and
+            settings below can be edited.
+          </p>
+        )}
         <EquationEditor
           text={doc.getText('equations')}
           awareness={awareness}
-          readOnly={readOnly}
+          history={history}
+          readOnly={readOnly || narrow}
+          changed={changedEquations}
           messages={messages}
           values={values}
           names={names}
@@ -87,6 +112,7 @@ export function DraftModelColumn({ connection, live, readOnly, earlier }: DraftM
           />
         </div>
       )}
+      <FaultList faults={unplacedFaults(checked?.errors ?? [])} onGo={goTo} />
       <Part title="Parameters">
         <ParameterTable doc={doc} content={content} readOnly={readOnly} faults={faults} changed={changed} />
       </Part>

@@ -1,15 +1,18 @@
+import { uncertaintyText } from '#shared/model/draft.ts'
 import type { ModelError } from '#shared/model/errors.ts'
+import type { CardStage } from '#shared/stability/messages.ts'
 import type { LineMessage } from '#src/features/editor/line-messages.ts'
 import { shortFigure } from '#src/lib/figures.ts'
 import type { CardState } from '#src/workers/card-runner.ts'
 import type { Earlier } from './use-in-force.ts'
 
-/** Faults that belong to a cell or a setting, by their path in the model document. */
+/** Faults that belong to a cell or a setting, by their path in the model document; several of one place one after another. */
 export function faultsByPath(errors: readonly ModelError[]): Map<string, string> {
   const faults = new Map<string, string>()
-  for (const error of errors) {
-    if (error.path !== undefined && error.line === undefined && !faults.has(error.path))
-      faults.set(error.path, error.message)
+  for (const { path, line, message } of errors) {
+    if (path === undefined || line !== undefined) continue
+    const before = faults.get(path)
+    faults.set(path, before ? `${before} ${message}` : message)
   }
   return faults
 }
@@ -54,7 +57,15 @@ export function valuesOf(live: CardState) {
 
 /** Parameters whose row differs from the revision in force. */
 export function changedSymbols(
-  rows: readonly { symbol: string; value: string; low: string; high: string; unit: string }[],
+  rows: readonly {
+    symbol: string
+    value: string
+    low: string
+    high: string
+    unit: string
+    meaning?: string
+    uncertainty?: string
+  }[],
   earlier: Earlier | null,
 ) {
   if (!earlier) return null
@@ -71,10 +82,25 @@ export function changedSymbols(
           number(row.value) !== text(before.value) ||
           number(row.low) !== text(before.low) ||
           number(row.high) !== text(before.high) ||
-          row.unit !== (before.unit ?? '')
+          row.unit !== (before.unit ?? '') ||
+          (row.meaning ?? '').trim() !== (before.meaning ?? '') ||
+          (row.uncertainty ?? '').trim() !== (before.uncertainty ? uncertaintyText(before.uncertainty) : '')
         )
       })
       .map((row) => row.symbol),
   )
   return { symbols, mark: earlier.mark }
 }
+
+const stageWords: Partial<Record<CardStage, string>> = {
+  'steady-states': 'Finding the steady states',
+  branches: 'Following the branches',
+  onsets: 'Looking for onsets',
+  window: 'Finding the window',
+  sensitivity: 'Computing sensitivities',
+  map: 'Computing the map of two parameters',
+}
+
+/** How far the analysis is: "Following the branches, 40 %". */
+export const progressWords = ({ stage, share }: NonNullable<CardState['progress']>): string =>
+  `${stageWords[stage] ?? 'Computing'}, ${Math.round(100 * Math.min(1, Math.max(0, share)))} %`

@@ -1,37 +1,42 @@
 import { useQueryClient } from '@tanstack/react-query'
-import { useCallback, useEffect, useState } from 'react'
-import { useNavigate, useParams } from 'react-router-dom'
+import { useCallback, useEffect } from 'react'
+import { useParams } from 'react-router-dom'
 import type { Page } from '#shared/api/pages.ts'
 import { keys } from '#src/api/keys.ts'
 import { useViewer } from '#src/api/session.ts'
-import { Button, ButtonLink } from '#src/components/button.tsx'
 import { PencilLine, Waiting } from '#src/components/pencil-line.tsx'
 import type { DraftConnection } from '#src/features/editor/draft-connection.ts'
+import { KeptLines } from '#src/features/editor/kept-lines.tsx'
+import { LeaveGuard } from '#src/features/editor/leave-guard.tsx'
 import { PresenceRings } from '#src/features/editor/presence-rings.tsx'
-import { DraftBand, SaveState } from '#src/features/editor/save-state.tsx'
+import { DraftBand, isOpenToEdits, SaveState } from '#src/features/editor/save-state.tsx'
 import { useConnectionState, useDraftConnection } from '#src/features/editor/use-draft-connection.ts'
 import { useDraftContent } from '#src/features/editor/use-draft-content.ts'
 import { ModelHead } from '#src/features/revisions/model-head.tsx'
-import { SendDialog } from '#src/features/revisions/revision-acts.tsx'
-import { announce } from '#src/lib/announce.ts'
-import type { CardState } from '#src/workers/card-runner.ts'
 import { useLiveCard } from '#src/workers/use-live-card.ts'
 import { DraftCardColumn } from './draft-card-column.tsx'
 import { DraftModelColumn } from './draft-model-column.tsx'
+import { EditActs } from './edit-acts.tsx'
 import { PageGate } from './page-gate.tsx'
+import { useCommandKey } from './use-command-key.ts'
 import { useInForce } from './use-in-force.ts'
 import { useRunningPoint } from './use-running-point.ts'
 
 /** The co-edit view: one draft, everybody in it at once, the card beside it following every edit. */
 export function ModelEditPage() {
   const { page: code = '' } = useParams()
-  return <PageGate code={code}>{(page) => <Draft key={page.id} page={page} />}</PageGate>
+  // The draft stays open when its head cannot be read again: what is typed in it must not go with it.
+  return (
+    <PageGate keep code={code}>
+      {(page) => <Draft key={page.id} page={page} />}
+    </PageGate>
+  )
 }
 
 function Draft({ page }: { page: Page }) {
-  const { connection, renew } = useDraftConnection(page.id)
   const queryClient = useQueryClient()
   const viewer = useViewer()
+  const { connection, renew } = useDraftConnection(page.id, viewer)
   const reload = useCallback(() => {
     queryClient.invalidateQueries({ queryKey: keys.page(viewer, page.code) })
     renew()
@@ -44,11 +49,10 @@ function Editing({ page, connection, onReload }: { page: Page; connection: Draft
   const state = useConnectionState(connection)
   const content = useDraftContent(connection.doc)
   const [at] = useRunningPoint()
-  const live = useLiveCard(state.synced ? content : null, at)
-  const readOnly =
-    !state.synced ||
-    state.phase === 'refused' ||
-    (state.room !== 'live' && state.room !== 'not-saving' && state.room !== 'full')
+  const { live, again, stop } = useLiveCard(state.synced ? content : null, at)
+  const viewer = useViewer()
+  const readOnly = !isOpenToEdits(state)
+  useCommandKey('again', again)
   useFreshHead(page, state.room, state.generation)
   const earlier = useInForce(page)
   const title = content.settings.title || page.title
@@ -70,11 +74,13 @@ function Editing({ page, connection, onReload }: { page: Page; connection: Draft
           </>
         }
       />
-      <DraftBand connection={connection} onReload={onReload} />
+      <LeaveGuard connection={connection} />
+      <DraftBand connection={connection} onReload={onReload} renew={null} />
+      <KeptLines person={viewer} page={page.id} />
       {!state.synced && state.phase !== 'refused' && <PencilLine label="Opening the draft" />}
       <div className="grid grid-cols-1 items-start gap-4 bench:grid-cols-[minmax(0,432px)_minmax(0,1fr)] wide:grid-cols-[480px_minmax(0,1fr)]">
         <DraftModelColumn connection={connection} live={live} readOnly={readOnly} earlier={earlier} />
-        <DraftCardColumn connection={connection} live={live} mayEdit={!readOnly} earlier={earlier} />
+        <DraftCardColumn connection={connection} live={live} mayEdit={!readOnly} earlier={earlier} onStop={stop} />
       </div>
     </main>
   )
@@ -92,64 +98,4 @@ function useFreshHead(page: Page, room: string | null, generation: number | null
   useEffect(() => {
     if (drifted) queryClient.invalidateQueries({ queryKey: keys.pageHead(viewer, page.code) })
   }, [drifted, queryClient, viewer, page.code])
-}
-
-function EditActs({ page, connection, live }: { page: Page; connection: DraftConnection; live: CardState }) {
-  const state = useConnectionState(connection)
-  const navigate = useNavigate()
-  const [sending, setSending] = useState(false)
-  const mayWrite = page.may.includes('draft:write')
-  useSendKey(() => setSending(true), mayWrite)
-  if (page.inReview) {
-    return (
-      <ButtonLink to={`/reviews/${page.code}/${page.inReview.mark}`} look="first">
-        Open the review
-      </ButtonLink>
-    )
-  }
-  if (!mayWrite) return null
-  const why =
-    state.phase !== 'saved'
-      ? 'Wait until every edit is saved.'
-      : live.checked?.errors.length
-        ? 'Settle the faults first.'
-        : null
-  return (
-    <>
-      <Button
-        look="first"
-        unavailable={why}
-        showReason={false}
-        onClick={() => setSending(true)}
-        title={why ?? undefined}
-      >
-        Send for review
-      </Button>
-      <SendDialog
-        code={page.code}
-        generation={state.generation ?? page.draft?.generation ?? 1}
-        open={sending && why === null}
-        onClose={() => setSending(false)}
-        onSent={(revision) => {
-          announce('Sent for review')
-          navigate(`/m/${page.code}/rev/${revision.mark}`)
-        }}
-      />
-    </>
-  )
-}
-
-/** Ctrl+Shift+Enter opens the dialog, from anywhere on the page. */
-function useSendKey(onKey: () => void, active: boolean): void {
-  useEffect(() => {
-    if (!active) return
-    const listen = (event: KeyboardEvent) => {
-      if (event.key === 'Enter' && event.shiftKey && (event.ctrlKey || event.metaKey)) {
-        event.preventDefault()
-        onKey()
-      }
-    }
-    window.addEventListener('keydown', listen)
-    return () => window.removeEventListener('keydown', listen)
-  })
 }

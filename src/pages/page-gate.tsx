@@ -33,11 +33,23 @@ export function ReadFault({ error, what, onAgain }: { error: Error; what: string
   )
 }
 
-/** Reads the head of a page and shows what stands in its place until it is there. */
-export function PageGate({ code, children }: { code: string; children: (page: Page) => ReactNode }) {
+/**
+ * Reads the head of a page and shows what stands in its place until it is there. `keep`: what was read once stays when it
+ * cannot be read again; for a screen that holds unsaved work and hears by itself when its right to stand ends.
+ */
+export function PageGate({
+  code,
+  keep = false,
+  children,
+}: {
+  code: string
+  keep?: boolean
+  children: (page: Page) => ReactNode
+}) {
   const viewer = useViewer()
   const page = useQuery(pageQuery(viewer, code))
   if (page.isPending) return <Waiting what={`Opening ${code}`} />
+  if (page.isError && keep && page.data) return children(page.data)
   if (page.isError) return <ReadFault error={page.error} what={`page ${code}`} onAgain={() => page.refetch()} />
   return children(page.data)
 }

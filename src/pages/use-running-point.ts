@@ -10,7 +10,8 @@ export function useRunningPoint(): [number | null, (at: number | null) => void] 
       (before) => {
         const next = new URLSearchParams(before)
         if (at === null) next.delete('at')
-        else next.set('at', String(Number(at.toPrecision(6))))
+        // In full: on a narrow range (1000 to 1001) fewer digits would be another point.
+        else next.set('at', String(at))
         return next
       },
       { replace: true, preventScrollReset: true },

@@ -1,66 +1,9 @@
 import type { ModelDocument } from '#shared/model/document.ts'
 import type { DraftContent } from '#shared/model/draft.ts'
-import type { CardStage } from '#shared/stability/messages.ts'
-import { type AtReply, type CardReply, type CheckedReply, readReply, type WorkerRequest } from './messages.ts'
+import { type CardPort, type CardRunner, type CardRunnerOptions, type CardState, idleCard } from './card-state.ts'
+import { readReply } from './messages.ts'
 
-/** What a worker looks like from the page; tests hand in one of their own. */
-export interface CardPort {
-  postMessage(request: WorkerRequest): void
-  onmessage: ((event: { data: unknown }) => void) | null
-  onerror: ((event: unknown) => void) | null
-  terminate(): void
-}
-
-/** A card with the time it came and the time of the edit it answers (as handed to `analyse`). */
-export type TimedCard = CardReply & { at: Date; editedAt: number }
-
-export interface CardState {
-  /** What the newest checked text says. */
-  checked: CheckedReply | null
-  /** The last card that could be computed; it stays while a newer text is computed or cannot be read. */
-  card: TimedCard | null
-  /** A text newer than the card is being computed. */
-  computing: boolean
-  /** The card is not of the newest text. */
-  older: boolean
-  progress: { stage: CardStage; share: number } | null
-  /** The analysis of the newest text ended without a card, and why. */
-  failure: string | null
-  /** The steady states at the viewer's running point, computed for the card's own model; null until they are. */
-  exact: Pick<AtReply, 'p' | 'steadyStates' | 'complete'> | null
-}
-
-export interface CardRunner {
-  /** The newest text. `editedAt` is the page's clock at the edit, for the measure from edit to card. */
-  analyse(draft: DraftContent, editedAt?: number): void
-  /** Asks for the steady states of the card's model at another value of its control; null: no longer wanted. */
-  refine(p: number | null): void
-  subscribe(listener: () => void): () => void
-  getState(): CardState
-  close(): void
-}
-
-export interface CardRunnerOptions {
-  spawn: () => CardPort
-  now?: () => Date
-  /**
-   * A run that has taken this long is given up for a newer text, in ms. A model whose last run took long is given two and
-   * a half times that, up to five times as long as this: else somebody who types on would never see a card.
-   */
-  patience?: number
-  /** A run that has taken this long without an answer is taken to hang, in ms. */
-  longest?: number
-}
-
-export const idleCard: CardState = {
-  checked: null,
-  card: null,
-  computing: false,
-  older: false,
-  progress: null,
-  failure: null,
-  exact: null,
-}
+export { type CardPort, type CardRunner, type CardState, idleCard, type TimedCard } from './card-state.ts'
 
 interface Waiting {
   draft: DraftContent
@@ -89,6 +32,7 @@ export function createCardRunner(options: CardRunnerOptions): CardRunner {
   let spare: CardPort | null = null
   let running: { id: number; since: number; told: number; editedAt: number; draft: boolean } | null = null
   let waiting: Waiting | null = null
+  let newest: Waiting | null = null
   let wanted: number | null = null
   let giveUp: ReturnType<typeof setTimeout> | undefined
   let hangs: ReturnType<typeof setTimeout> | undefined
@@ -193,9 +137,9 @@ export function createCardRunner(options: CardRunnerOptions): CardRunner {
   function next(): void {
     clearTimeout(giveUp)
     giveUp = undefined
-    const newest = waiting
+    const first = waiting
     waiting = null
-    if (newest) start(newest)
+    if (first) start(first)
     else if (wanted !== null && state.card && !state.older && state.exact?.p !== wanted)
       startAt(state.card.document, wanted)
   }
@@ -209,17 +153,37 @@ export function createCardRunner(options: CardRunnerOptions): CardRunner {
     next()
   }
 
+  function analyse(draft: DraftContent, editedAt = 0): void {
+    newest = { draft, editedAt }
+    waiting = newest
+    if (!running) {
+      next()
+      return
+    }
+    set({ computing: true, older: state.card !== null })
+    const allowed = Math.min(5 * patience, Math.max(patience, 2.5 * lastRun))
+    giveUp ??= setTimeout(onPatience, Math.max(0, allowed - (Date.now() - running.since)))
+  }
+
+  function stop(): void {
+    if (!running?.draft && !waiting) return
+    clearTimeout(giveUp)
+    giveUp = undefined
+    waiting = null
+    if (running) {
+      running = null
+      clearTimeout(hangs)
+      replace()
+    }
+    set({ computing: false, progress: null, failure: 'Stopped before its end. Ctrl+Enter runs it again.' })
+  }
+
   return {
-    analyse(draft, editedAt = 0) {
-      waiting = { draft, editedAt }
-      if (!running) {
-        next()
-        return
-      }
-      set({ computing: true, older: state.card !== null })
-      const allowed = Math.min(5 * patience, Math.max(patience, 2.5 * lastRun))
-      giveUp ??= setTimeout(onPatience, Math.max(0, allowed - (Date.now() - running.since)))
+    analyse,
+    again(editedAt = 0) {
+      if (newest) analyse(newest.draft, editedAt)
     },
+    stop,
     refine(p) {
       wanted = p
       if (!running) next()

@@ -1,4 +1,4 @@
-import { useEffect, useLayoutEffect, useState, useSyncExternalStore } from 'react'
+import { useCallback, useEffect, useLayoutEffect, useState, useSyncExternalStore } from 'react'
 import type { DraftContent } from '#shared/model/draft.ts'
 import { type CardPort, type CardRunner, type CardState, createCardRunner, idleCard } from './card-runner.ts'
 
@@ -23,10 +23,14 @@ const rest = 150
 /**
  * The live card of a draft, recomputed in a worker with every edit; the newest edit wins. Null: nothing to compute yet.
  * `at` is the viewer's running point: where it is not the model's own value, the steady states there are computed as well.
+ * `again` runs the text as it stands once more, `stop` gives a run up.
  *
  * Leaves one performance measure, `card-update`, for each card: from the edit to the moment the page holds the card.
  */
-export function useLiveCard(draft: DraftContent | null, at: number | null = null): CardState {
+export function useLiveCard(
+  draft: DraftContent | null,
+  at: number | null = null,
+): { live: CardState; again: () => void; stop: () => void } {
   const [runner, setRunner] = useState<CardRunner | null>(null)
   useEffect(() => {
     const made = createCardRunner({ spawn })
@@ -57,5 +61,7 @@ export function useLiveCard(draft: DraftContent | null, at: number | null = null
     const timer = setTimeout(() => runner.refine(at), rest)
     return () => clearTimeout(timer)
   }, [runner, card, at])
-  return state
+  const again = useCallback(() => runner?.again(performance.now()), [runner])
+  const stop = useCallback(() => runner?.stop(), [runner])
+  return { live: state, again, stop }
 }

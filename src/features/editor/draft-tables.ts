@@ -1,4 +1,5 @@
 import * as Y from 'yjs'
+import { sameSymbol } from '#shared/stability/summary.ts'
 import {
   orderBetween,
   type ParameterCell,
@@ -13,7 +14,10 @@ import {
   statesOf,
 } from '#shared/ydoc/shape.ts'
 
-/** Changes of the co-edited tables. Each is one transaction, so that undo and the others see one step. */
+/** Changes of the co-edited tables. Each is one transaction, so that undo (draft-history.ts) and the others see one step. */
+
+/** Origin of these transactions. */
+export const tableOrigin = 'table'
 
 const newId = () =>
   Array.from(crypto.getRandomValues(new Uint8Array(8)), (byte) => byte.toString(16).padStart(2, '0')).join('')
@@ -29,7 +33,7 @@ export function setStateCell(doc: Y.Doc, id: string, cell: StateCell, value: str
 function setCell(doc: Y.Doc, row: Y.Map<string> | undefined, cell: string, value: string): void {
   // A row that somebody else removed meanwhile stays removed.
   if (!row || row.get(cell) === value) return
-  doc.transact(() => row.set(cell, value), 'table')
+  doc.transact(() => row.set(cell, value), tableOrigin)
 }
 
 export function addParameter(doc: Y.Doc, cells: Partial<Record<ParameterCell, string>> = {}): string {
@@ -53,29 +57,30 @@ function addRow(
     row.set('order', orderBetween(last, undefined))
     for (const name of names) row.set(name, cells[name] ?? '')
     table.set(id, row)
-  }, 'table')
+  }, tableOrigin)
   return id
 }
 
 export function removeParameter(doc: Y.Doc, id: string): void {
-  doc.transact(() => parametersOf(doc).delete(id), 'table')
+  doc.transact(() => parametersOf(doc).delete(id), tableOrigin)
 }
 
 export function removeState(doc: Y.Doc, id: string): void {
-  doc.transact(() => statesOf(doc).delete(id), 'table')
+  doc.transact(() => statesOf(doc).delete(id), tableOrigin)
 }
 
 export function setSetting(doc: Y.Doc, key: SettingKey, value: string): void {
   const settings = settingsOf(doc)
   if (settings.get(key) === value) return
-  doc.transact(() => settings.set(key, value), 'table')
+  doc.transact(() => settings.set(key, value), tableOrigin)
 }
 
-/** Writes the control parameter's own value: "Set as the page's value". */
+/** Writes the control parameter's own value as it was shown, digit by digit: "Set as the page's value". */
 export function setControlValue(doc: Y.Doc, value: number): boolean {
   const control = settingsOf(doc).get('control')
-  const row = parameterRows(doc).find((candidate) => candidate.symbol === control)
+  if (!control || !Number.isFinite(value)) return false
+  const row = parameterRows(doc).find(({ symbol }) => sameSymbol(symbol, control))
   if (!row) return false
-  setParameterCell(doc, row.id, 'value', String(Number(value.toPrecision(6))))
+  setParameterCell(doc, row.id, 'value', String(value))
   return true
 }

@@ -9,6 +9,7 @@ import {
 } from '@codemirror/view'
 import type { Awareness } from 'y-protocols/awareness'
 import * as Y from 'yjs'
+import { type RelativePosition, readPresence } from './presence-state.ts'
 
 /**
  * Other people's carets: ink, told apart by their name above the line, never by hue. The package's own plugin colours
@@ -42,18 +43,12 @@ class CaretWidget extends WidgetType {
   }
 }
 
-interface Presence {
-  user?: { name?: unknown }
-  cursor?: { anchor?: unknown; head?: unknown } | null
-}
-
-function positionOf(doc: Y.Doc, text: Y.Text, json: unknown): number | null {
-  if (typeof json !== 'object' || json === null) return null
+function positionOf(doc: Y.Doc, text: Y.Text, json: RelativePosition): number | null {
   try {
     const absolute = Y.createAbsolutePositionFromRelativePosition(Y.createRelativePositionFromJSON(json), doc)
     return absolute && absolute.type === text ? absolute.index : null
   } catch {
-    // A position another version of the client wrote, or a made-up one.
+    // A position in a text that this document does not have.
     return null
   }
 }
@@ -86,9 +81,8 @@ export function remoteCarets(text: Y.Text, awareness: Awareness): Extension {
         const relative = (index: number) =>
           Y.relativePositionToJSON(Y.createRelativePositionFromTypeIndex(text, Math.min(index, text.length)))
         const cursor = view.hasFocus ? { anchor: relative(anchor), head: relative(head) } : null
-        const current: Presence | null = awareness.getLocalState()
-        if (JSON.stringify(current?.cursor ?? null) !== JSON.stringify(cursor))
-          awareness.setLocalStateField('cursor', cursor)
+        const told: unknown = awareness.getLocalState()?.cursor ?? null
+        if (JSON.stringify(told) !== JSON.stringify(cursor)) awareness.setLocalStateField('cursor', cursor)
       }
 
       private build(view: EditorView): DecorationSet {
@@ -96,13 +90,19 @@ export function remoteCarets(text: Y.Text, awareness: Awareness): Extension {
         if (!doc) return Decoration.none
         const length = view.state.doc.length
         const carets: { from: number; to: number; head: number; name: string }[] = []
-        for (const [client, state] of awareness.getStates() as Map<number, Presence>) {
-          if (client === doc.clientID || !state.cursor) continue
-          const anchor = positionOf(doc, text, state.cursor.anchor)
-          const head = positionOf(doc, text, state.cursor.head)
+        for (const [client, state] of awareness.getStates()) {
+          if (client === doc.clientID) continue
+          const { user, cursor } = readPresence(state)
+          if (!cursor) continue
+          const anchor = positionOf(doc, text, cursor.anchor)
+          const head = positionOf(doc, text, cursor.head)
           if (anchor === null || head === null || anchor > length || head > length) continue
-          const name = typeof state.user?.name === 'string' ? state.user.name : 'somebody'
-          carets.push({ from: Math.min(anchor, head), to: Math.max(anchor, head), head, name })
+          carets.push({
+            from: Math.min(anchor, head),
+            to: Math.max(anchor, head),
+            head,
+            name: user?.name ?? 'somebody',
+          })
         }
         const ranges = carets.flatMap(({ from, to, head, name }) => [
           ...(from < to ? [{ from, to, value: Decoration.mark({ class: 'cm-other-selection' }) }] : []),

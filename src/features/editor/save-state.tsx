@@ -1,6 +1,8 @@
 import { CircleAlert, Unplug } from 'lucide-react'
 import { Button } from '#src/components/button.tsx'
 import type { DraftConnection, DraftConnectionState } from './draft-connection.ts'
+import { editsAsText } from './kept-edits.ts'
+import { LinesToCopy } from './kept-lines.tsx'
 import { useConnectionState } from './use-draft-connection.ts'
 
 /** Saving, Saved or Offline: "Saved" only once the library has committed every edit of this tab. */
@@ -8,7 +10,7 @@ export function SaveState({ connection }: { connection: DraftConnection }) {
   const state = useConnectionState(connection)
   // Read out only where something is wrong: "Saving, Saved" after every key would drown everything else.
   const calm =
-    state.phase === 'connecting' || state.phase === 'saved' || (state.phase === 'saving' && state.room !== 'not-saving')
+    state.phase === 'connecting' || state.phase === 'saved' || (state.phase === 'saving' && state.room === 'live')
   return (
     <span aria-live={calm ? 'off' : 'polite'} className="inline-flex min-h-8 items-center gap-1.5 text-note text-ink-2">
       {state.phase === 'offline' && <Unplug aria-hidden className="size-4" />}
@@ -17,25 +19,44 @@ export function SaveState({ connection }: { connection: DraftConnection }) {
   )
 }
 
-function saveWords(state: DraftConnectionState): string {
+const editsInWords = (count: number) => (count === 1 ? '1 edit' : `${count} edits`)
+
+export function saveWords(state: DraftConnectionState): string {
   switch (state.phase) {
     case 'connecting':
       return 'Opening the draft'
     case 'saved':
       return 'Saved'
     case 'saving':
-      return state.room === 'not-saving' ? 'Not saving' : 'Saving'
+      if (state.room === 'live' || state.room === null) return 'Saving'
+      // Held back, for a reason that stands in the band.
+      return state.room === 'not-saving' ? 'Not saving' : `Not saved: ${editsInWords(state.unsaved)}`
     case 'offline':
-      return state.unsaved === 0
-        ? 'Offline'
-        : `Offline, ${state.unsaved === 1 ? '1 edit' : `${state.unsaved} edits`} kept here`
+      return state.unsaved === 0 ? 'Offline' : `Offline, ${editsInWords(state.unsaved)} kept here`
     case 'refused':
       return 'Stopped'
   }
 }
 
+/**
+ * May be typed into. While the line is cut it may: the edits are kept and sent later. While the database takes nothing it
+ * may not: nobody knows how long that lasts, and what is typed would exist in this tab only.
+ */
+export function isOpenToEdits({ synced, phase, room }: DraftConnectionState): boolean {
+  return synced && phase !== 'refused' && (room === 'live' || room === 'full')
+}
+
 /** What the page says across its top when the draft does not simply take edits. Null where it does. */
-export function DraftBand({ connection, onReload }: { connection: DraftConnection; onReload: () => void }) {
+export function DraftBand({
+  connection,
+  onReload,
+  renew,
+}: {
+  connection: DraftConnection
+  onReload: () => void
+  /** For maintainers: the act that begins the draft anew from what it says. */
+  renew: React.ReactNode
+}) {
   const state = useConnectionState(connection)
   if (state.phase === 'refused' && state.closed)
     return <RefusedBand connection={connection} text={state.closed.text} onReload={onReload} />
@@ -69,10 +90,25 @@ export function DraftBand({ connection, onReload }: { connection: DraftConnectio
         What is over the limit is not taken. Take some text away; the card still runs.
       </Band>
     )
+  if (state.room === 'no-room')
+    return (
+      <Band title="Full: the steps of this draft">
+        <span>
+          The library keeps every step of a draft, up to 2 MiB, and this one has gone that far: it takes nothing more,
+          nor can anything be taken away. The card still runs.{' '}
+          {renew
+            ? 'Begun anew it holds what it says now, without the steps.'
+            : 'A maintainer can begin it anew from what it says now.'}
+        </span>
+        {renew}
+        <NotTaken connection={connection} />
+      </Band>
+    )
   if (state.room === 'not-saving')
     return (
       <Band title="Not saving">
-        The library cannot store edits just now. Nothing is lost: it tries again by itself. Do not close this tab.
+        The library cannot store edits just now, so nothing can be typed. What you typed is kept in this tab and stored
+        as soon as it can be; it tries again by itself. Do not close this tab.
       </Band>
     )
   return null
@@ -90,7 +126,7 @@ function Band({ title, children }: { title: string; children: React.ReactNode })
   )
 }
 
-/** The server decided: what was not saved is offered as lines to copy, never merged by itself. */
+/** The server decided: what was not saved is offered as lines to copy, never merged by itself. They outlive the reload. */
 function RefusedBand({
   connection,
   text,
@@ -100,8 +136,6 @@ function RefusedBand({
   text: string
   onReload: () => void
 }) {
-  const { lines, cells } = connection.unsavedEdits()
-  const kept = [...lines, ...cells.map((cell) => `# ${cell.table} ${cell.row} ${cell.cell}: ${cell.value}`)].join('\n')
   return (
     <div role="alert" className="grid gap-2 border-y-[1.5px] border-ink bg-sheet px-4 py-3">
       <p className="flex flex-wrap items-center gap-2">
@@ -109,17 +143,15 @@ function RefusedBand({
         <b>{text}</b>
         <Button onClick={onReload}>Load the draft again</Button>
       </p>
-      {kept !== '' && (
-        <label className="grid gap-1 text-note">
-          What you typed and the library does not have. Copy the lines you want to put in again.
-          <textarea
-            readOnly
-            rows={Math.min(8, kept.split('\n').length + 1)}
-            value={kept}
-            className="figures w-full rounded-control border border-line bg-well p-2 text-note"
-          />
-        </label>
-      )}
+      <NotTaken connection={connection} />
     </div>
   )
+}
+
+/** Edits of this tab that the library does not take, to be copied. */
+function NotTaken({ connection }: { connection: DraftConnection }) {
+  const { unsaved } = useConnectionState(connection)
+  const text = unsaved > 0 ? editsAsText(connection.unsavedEdits()) : ''
+  if (text === '') return null
+  return <LinesToCopy text={text} words="What you typed and the library does not have." />
 }

@@ -31,6 +31,7 @@ export function SettingsFields({ doc, content, readOnly, faults, helpers }: Sett
   ]
   const field = (key: SettingKey, label: string, hint?: string) => (
     <Field
+      data-place={key}
       label={label}
       hint={hint}
       value={settings[key] ?? ''}
@@ -41,6 +42,7 @@ export function SettingsFields({ doc, content, readOnly, faults, helpers }: Sett
   )
   const select = (key: SettingKey, label: string, options: { value: string; label: string }[]) => (
     <Select
+      data-place={key}
       label={label}
       options={options}
       value={settings[key] ?? ''}
@@ -61,6 +63,11 @@ export function SettingsFields({ doc, content, readOnly, faults, helpers }: Sett
           'Control parameter',
           withCurrent(named(content.parameters), settings.control ?? '', 'Choose one'),
         )}
+        {select(
+          'secondControl',
+          'Second control',
+          withCurrent(named(content.parameters), settings.secondControl ?? '', 'None'),
+        )}
         {select('observed', 'Observed quantity', withCurrent(observable, settings.observed ?? '', 'Choose one'))}
         {field('timeUnit', 'Time unit', 's, min, h or d')}
         {field('quietWord', 'Words for steady running', 'for instance: Runs straight')}
@@ -69,17 +76,21 @@ export function SettingsFields({ doc, content, readOnly, faults, helpers }: Sett
       {field('summary', 'One or two sentences')}
       {field('field', 'Field')}
       <TextField
+        data-place="leftOut"
         label="What the model leaves out"
         hint="One a line: which physics is neglected"
         rows={3}
         value={settings.leftOut ?? ''}
+        error={faults.get('leftOut')}
         readOnly={readOnly}
         onChange={(event) => setSetting(doc, 'leftOut', event.target.value)}
       />
       <TextField
+        data-place="notes"
         label="Notes"
         rows={3}
         value={settings.notes ?? ''}
+        error={faults.get('notes')}
         readOnly={readOnly}
         onChange={(event) => setSetting(doc, 'notes', event.target.value)}
       />
