@@ -1,6 +1,3 @@
-import { readFileSync } from 'node:fs'
-import { fileURLToPath } from 'node:url'
-import { sql } from 'drizzle-orm'
 import type { MySqlDatabase } from 'drizzle-orm/mysql-core'
 import {
   drizzle,
@@ -8,12 +5,9 @@ import {
   type MySql2PreparedQueryHKT,
   type MySql2QueryResultHKT,
 } from 'drizzle-orm/mysql2'
-import { migrate as runMigrations } from 'drizzle-orm/mysql2/migrator'
 import { createPool, type Pool, type PoolConnection } from 'mysql2'
 import { z } from 'zod'
 import * as schema from './schema/index.ts'
-
-const migrationsFolder = fileURLToPath(new URL('./migrations', import.meta.url))
 
 /** The database with its connection pool. */
 export type Database = MySql2Database<typeof schema> & { $client: Pool }
@@ -69,50 +63,6 @@ export function createDatabase(url: string, connections = 10): DatabaseHandle {
     db,
     pool,
     close: () => pool.promise().end(),
-  }
-}
-
-const journal = z
-  .object({ entries: z.array(z.object({ when: z.number() })).min(1) })
-  .transform(({ entries }) => Math.max(...entries.map((entry) => entry.when)))
-
-/** The newest migration this code knows. */
-function newestMigration(): number {
-  return journal.parse(JSON.parse(readFileSync(`${migrationsFolder}/meta/_journal.json`, 'utf8')))
-}
-
-/**
- * Brings the tables to this code's state. Two processes that start at once do not collide: one waits for the other
- * (up to a minute). Needs a user who may change tables.
- *
- * @throws {Error} if the lock is not given within a minute, or a statement fails (MariaDB does not roll tables back).
- */
-export async function migrate(db: Database): Promise<void> {
-  // The lock belongs to one connection; the migrations must run on the same one.
-  const connection = await db.$client.promise().getConnection()
-  try {
-    const [rows] = await connection.query("SELECT GET_LOCK(CONCAT('migrate ', DATABASE()), 60) AS taken")
-    const taken = z.array(z.object({ taken: z.number().nullable() })).parse(rows)[0]?.taken
-    if (taken !== 1) throw new Error('Another process is changing the tables and did not finish within a minute.')
-    try {
-      await runMigrations(drizzle(connection, { schema, mode: 'default' }), { migrationsFolder })
-    } finally {
-      await connection.query("DO RELEASE_LOCK(CONCAT('migrate ', DATABASE()))")
-    }
-  } finally {
-    connection.release()
-  }
-}
-
-/** True where every migration this code knows has run. */
-export async function isMigrated(db: Database): Promise<boolean> {
-  try {
-    const [rows] = await db.execute(sql`select max(created_at) as newest from __drizzle_migrations`)
-    const newest = z.array(z.object({ newest: z.coerce.number() })).parse(rows)[0]?.newest ?? 0
-    return newest >= newestMigration()
-  } catch (error) {
-    if (databaseErrorNumber(error) === 1146) return false
-    throw error
   }
 }
 

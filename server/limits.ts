@@ -3,6 +3,19 @@ const minute = 60 * second
 const hour = 60 * minute
 const day = 24 * hour
 
+const compute = {
+  /** Child processes for cards, kept warm. */
+  children: 2,
+  /** One card; then the child is killed. */
+  cardDeadline: 10 * second,
+  citationDeadline: 10 * second,
+  /** Cards that may wait for a child. */
+  waiting: 100,
+  /** A draft's card is computed once it has not changed for so long, and at the latest after `latest`. */
+  settle: 2 * second,
+  latest: 15 * second,
+}
+
 /**
  * Every limit and time-out of the server in one place; the tests read it. Times are in milliseconds, sizes in bytes.
  * Tests may widen a limit by handing createApp a changed copy.
@@ -47,18 +60,9 @@ export const limits = {
     cards: 30,
     cardsAtOnce: 2,
   },
-  compute: {
-    /** Child processes for cards, kept warm. */
-    children: 2,
-    /** One card; then the child is killed. */
-    cardDeadline: 10 * second,
-    citationDeadline: 10 * second,
-    /** Cards that may wait for a child. */
-    waiting: 100,
-    /** A draft's card is computed once it has not changed for so long, and at the latest after `latest`. */
-    settle: 2 * second,
-    latest: 15 * second,
-  },
+  compute,
+  /** While the demonstration library is loaded nobody waits for an answer, and a slow machine has to get there too. */
+  loading: { ...compute, cardDeadline: minute },
   idempotencyKeys: { keep: 1 * day },
   /** `unsaved`: edits that wait longer for the database make the process unready. */
   ready: { ping: 1 * second, unsaved: 5 * second },

@@ -22,3 +22,6 @@ export const longBlob = customType<{ data: Uint8Array; driverData: Buffer }>({
   toDriver: (value) => Buffer.from(value.buffer, value.byteOffset, value.byteLength),
   fromDriver: (value) => new Uint8Array(value.buffer, value.byteOffset, value.byteLength),
 })
+
+/** Rule of every foreign key: what something else speaks of stays. */
+export const kept = { onDelete: 'restrict', onUpdate: 'restrict' } as const

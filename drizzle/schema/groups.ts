@@ -1,6 +1,6 @@
 import { mysqlEnum, mysqlTable, primaryKey, uniqueIndex, varchar } from 'drizzle-orm/mysql-core'
 import { memberRoles } from '#shared/api/roles.ts'
-import { idColumn, primaryId, time } from './columns.ts'
+import { idColumn, kept, primaryId, time } from './columns.ts'
 import { people } from './people.ts'
 
 export const groups = mysqlTable(
@@ -19,7 +19,7 @@ export const groupPrefixes = mysqlTable('group_prefixes', {
   prefix: varchar('prefix', { length: 4 }).primaryKey(),
   groupId: idColumn('group_id')
     .notNull()
-    .references(() => groups.id),
+    .references(() => groups.id, kept),
 })
 
 export const memberships = mysqlTable(
@@ -27,10 +27,10 @@ export const memberships = mysqlTable(
   {
     groupId: idColumn('group_id')
       .notNull()
-      .references(() => groups.id),
+      .references(() => groups.id, kept),
     personId: idColumn('person_id')
       .notNull()
-      .references(() => people.id),
+      .references(() => people.id, kept),
     role: mysqlEnum('role', memberRoles).notNull(),
     since: time('since').notNull(),
   },

@@ -1,13 +1,14 @@
 import { index, mysqlTable, varchar } from 'drizzle-orm/mysql-core'
-import { idColumn, jsonDocument, primaryId, time } from './columns.ts'
+import { idColumn, jsonDocument, kept, primaryId, time } from './columns.ts'
+import { people } from './people.ts'
 
-/** Every act: insert only, in the act's own transaction. `hash` covers this row and `previous_hash`, so a changed row breaks the chain. */
+/** Every act: insert only (a trigger sees to it), in the act's own transaction. `hash` covers this row and `previous_hash`, so a changed row breaks the chain. */
 export const log = mysqlTable(
   'log',
   {
     id: primaryId(),
     at: time('at').notNull(),
-    personId: idColumn('person_id'),
+    personId: idColumn('person_id').references(() => people.id, kept),
     act: varchar('act', { length: 60 }).notNull(),
     target: varchar('target', { length: 120 }).notNull(),
     before: jsonDocument('before_value'),

@@ -1,8 +1,19 @@
-import { index, int, mysqlEnum, mysqlTable, primaryKey, text, uniqueIndex, varchar } from 'drizzle-orm/mysql-core'
+import {
+  type AnyMySqlColumn,
+  index,
+  int,
+  mysqlEnum,
+  mysqlTable,
+  primaryKey,
+  text,
+  uniqueIndex,
+  varchar,
+} from 'drizzle-orm/mysql-core'
 import { readAccess } from '#shared/api/roles.ts'
-import { idColumn, jsonDocument, longBlob, primaryId, time } from './columns.ts'
-import { groups } from './groups.ts'
+import { idColumn, jsonDocument, kept, longBlob, primaryId, time } from './columns.ts'
+import { groupPrefixes, groups } from './groups.ts'
 import { people } from './people.ts'
+import { cards, revisions } from './revisions.ts'
 
 /** One row a model page. Title, summary and field follow the draft while nothing is public, then the revision in force. */
 export const pages = mysqlTable(
@@ -12,22 +23,22 @@ export const pages = mysqlTable(
     code: varchar('code', { length: 11 }).notNull(),
     groupId: idColumn('group_id')
       .notNull()
-      .references(() => groups.id),
+      .references(() => groups.id, kept),
     title: varchar('title', { length: 200 }).notNull(),
     summary: varchar('summary', { length: 1000 }).notNull().default(''),
     field: varchar('field', { length: 80 }).notNull().default(''),
     access: mysqlEnum('access', readAccess).notNull().default('group'),
-    /** revisions.id; no foreign key here because the two tables point at each other, the services keep it under the page's lock. */
-    inForceId: idColumn('in_force_id'),
-    inReviewId: idColumn('in_review_id'),
+    /** The two tables point at each other: the services write these under the page's lock, after the revision is there. */
+    inForceId: idColumn('in_force_id').references((): AnyMySqlColumn => revisions.id, kept),
+    inReviewId: idColumn('in_review_id').references((): AnyMySqlColumn => revisions.id, kept),
     /** 1 where a revision was ever approved (also when it is withdrawn now). */
     everPublic: int('ever_public').notNull().default(0),
-    /** Generation of the draft; a new one begins when a revision is approved. */
+    /** Generation of the draft; a new one begins when a revision is approved or a maintainer renews the draft. */
     generation: int('generation').notNull().default(1),
     /** Raised whenever another process takes the room over; an append with an older epoch is refused. */
     ownerEpoch: int('owner_epoch').notNull().default(0),
-    /** cards.id of the last computed card of the draft, if it makes a model. */
-    draftCardId: idColumn('draft_card_id'),
+    /** The last computed card of the draft, if it makes a model. */
+    draftCardId: idColumn('draft_card_id').references((): AnyMySqlColumn => cards.id, kept),
     /** Its summary (shared/api/pages.ts cardSummary). */
     draftSummary: jsonDocument('draft_summary'),
     /** What would be frozen now (revisions.digest), so that a draft can be told from the revision in force; null where it makes no model. */
@@ -47,10 +58,12 @@ export const pages = mysqlTable(
   (table) => [uniqueIndex('pages_code').on(table.code), index('pages_group').on(table.groupId, table.changedAt)],
 )
 
-/** Every code ever given; never reused. */
+/** Every code ever given; never reused, so rows are only ever inserted. */
 export const pageCodes = mysqlTable('page_codes', {
   code: varchar('code', { length: 11 }).primaryKey(),
-  prefix: varchar('prefix', { length: 4 }).notNull(),
+  prefix: varchar('prefix', { length: 4 })
+    .notNull()
+    .references(() => groupPrefixes.prefix, kept),
   number: int('number').notNull(),
   givenAt: time('given_at').notNull(),
 })
@@ -61,11 +74,11 @@ export const draftWriters = mysqlTable(
   {
     pageId: idColumn('page_id')
       .notNull()
-      .references(() => pages.id),
+      .references(() => pages.id, kept),
     generation: int('generation').notNull(),
     personId: idColumn('person_id')
       .notNull()
-      .references(() => people.id),
+      .references(() => people.id, kept),
     first: time('first').notNull(),
     last: time('last').notNull(),
   },
@@ -79,10 +92,10 @@ export const pageUpdates = mysqlTable(
     seq: idColumn('seq').autoincrement().primaryKey(),
     pageId: idColumn('page_id')
       .notNull()
-      .references(() => pages.id),
+      .references(() => pages.id, kept),
     generation: int('generation').notNull(),
     ownerEpoch: int('owner_epoch').notNull(),
-    personId: idColumn('person_id').references(() => people.id),
+    personId: idColumn('person_id').references(() => people.id, kept),
     data: longBlob('data').notNull(),
     at: time('at').notNull(),
   },
@@ -96,7 +109,7 @@ export const pageSnapshots = mysqlTable(
     id: primaryId(),
     pageId: idColumn('page_id')
       .notNull()
-      .references(() => pages.id),
+      .references(() => pages.id, kept),
     generation: int('generation').notNull(),
     uptoSeq: idColumn('upto_seq').notNull(),
     data: longBlob('data').notNull(),

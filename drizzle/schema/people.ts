@@ -11,7 +11,7 @@ import {
   varchar,
 } from 'drizzle-orm/mysql-core'
 import { memberRoles } from '#shared/api/roles.ts'
-import { idColumn, jsonDocument, primaryId, time } from './columns.ts'
+import { idColumn, jsonDocument, kept, primaryId, time } from './columns.ts'
 import { groups } from './groups.ts'
 
 export const people = mysqlTable(
@@ -47,7 +47,7 @@ export const signIns = mysqlTable(
     id: primaryId(),
     personId: idColumn('person_id')
       .notNull()
-      .references(() => people.id),
+      .references(() => people.id, kept),
     sessionHash: varchar('session_hash', { length: 64 }).notNull(),
     at: time('at').notNull(),
     lastSeen: time('last_seen').notNull(),
@@ -64,7 +64,7 @@ export const oneTimeLinks = mysqlTable(
     id: primaryId(),
     kind: mysqlEnum('kind', ['setup', 'invitation', 'password']).notNull(),
     tokenHash: varchar('token_hash', { length: 64 }).notNull(),
-    personId: idColumn('person_id').references(() => people.id),
+    personId: idColumn('person_id').references(() => people.id, kept),
     createdAt: time('created_at').notNull(),
     expiresAt: time('expires_at').notNull(),
     usedAt: time('used_at'),
@@ -78,16 +78,16 @@ export const invitations = mysqlTable(
     id: primaryId(),
     groupId: idColumn('group_id')
       .notNull()
-      .references(() => groups.id),
+      .references(() => groups.id, kept),
     linkId: idColumn('link_id')
       .notNull()
-      .references(() => oneTimeLinks.id),
+      .references(() => oneTimeLinks.id, kept),
     email: varchar('email', { length: 254 }).notNull(),
     name: varchar('name', { length: 80 }),
     role: mysqlEnum('role', memberRoles).notNull(),
     invitedBy: idColumn('invited_by')
       .notNull()
-      .references(() => people.id),
+      .references(() => people.id, kept),
     createdAt: time('created_at').notNull(),
     revokedAt: time('revoked_at'),
   },
@@ -100,7 +100,7 @@ export const idempotencyKeys = mysqlTable(
   {
     personId: idColumn('person_id')
       .notNull()
-      .references(() => people.id),
+      .references(() => people.id, kept),
     key: varchar('idempotency_key', { length: 100 }).notNull(),
     requestHash: varchar('request_hash', { length: 64 }).notNull(),
     status: smallint('status'),

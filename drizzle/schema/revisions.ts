@@ -1,6 +1,6 @@
-import { index, int, mysqlEnum, mysqlTable, uniqueIndex, varchar } from 'drizzle-orm/mysql-core'
+import { type AnyMySqlColumn, index, int, mysqlEnum, mysqlTable, uniqueIndex, varchar } from 'drizzle-orm/mysql-core'
 import { revisionStates } from '#shared/api/pages.ts'
-import { idColumn, jsonDocument, primaryId, time } from './columns.ts'
+import { idColumn, jsonDocument, kept, primaryId, time } from './columns.ts'
 import { pages } from './pages.ts'
 import { people } from './people.ts'
 
@@ -18,14 +18,14 @@ export const cards = mysqlTable(
   (table) => [uniqueIndex('cards_key').on(table.fingerprint, table.engine, table.parts)],
 )
 
-/** Frozen; only `state`, `settled_at` and `reason` ever change. */
+/** Frozen: `state` moves on, and `settled_at` and `reason` are written with it; a trigger refuses everything else. */
 export const revisions = mysqlTable(
   'revisions',
   {
     id: primaryId(),
     pageId: idColumn('page_id')
       .notNull()
-      .references(() => pages.id),
+      .references(() => pages.id, kept),
     number: int('number').notNull(),
     major: int('major').notNull(),
     minor: int('minor').notNull(),
@@ -39,14 +39,15 @@ export const revisions = mysqlTable(
     engine: varchar('engine', { length: 20 }).notNull(),
     cardId: idColumn('card_id')
       .notNull()
-      .references(() => cards.id),
+      .references(() => cards.id, kept),
     /** shared/api/pages.ts cardSummary: what a list row needs. Not with the card: it names meanings, which the fingerprint leaves out. */
     cardSummary: jsonDocument('card_summary').notNull(),
-    baseId: idColumn('base_id'),
+    /** What was in force when it was sent. */
+    baseId: idColumn('base_id').references((): AnyMySqlColumn => revisions.id, kept),
     generation: int('generation').notNull(),
     sentBy: idColumn('sent_by')
       .notNull()
-      .references(() => people.id),
+      .references(() => people.id, kept),
     sentAt: time('sent_at').notNull(),
     settledAt: time('settled_at'),
     reason: varchar('reason', { length: 1000 }),
@@ -65,10 +66,10 @@ export const signatures = mysqlTable(
     id: primaryId(),
     revisionId: idColumn('revision_id')
       .notNull()
-      .references(() => revisions.id),
+      .references(() => revisions.id, kept),
     personId: idColumn('person_id')
       .notNull()
-      .references(() => people.id),
+      .references(() => people.id, kept),
     meaning: mysqlEnum('meaning', ['written', 'checked', 'approved', 'withdrawn']).notNull(),
     digest: varchar('digest', { length: 80 }).notNull(),
     at: time('at').notNull(),
@@ -82,10 +83,10 @@ export const remarks = mysqlTable(
     id: primaryId(),
     revisionId: idColumn('revision_id')
       .notNull()
-      .references(() => revisions.id),
+      .references(() => revisions.id, kept),
     authorId: idColumn('author_id')
       .notNull()
-      .references(() => people.id),
+      .references(() => people.id, kept),
     /** Line or parameter it speaks of; both null: the whole revision. */
     line: int('line'),
     symbol: varchar('symbol', { length: 64 }),

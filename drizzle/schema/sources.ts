@@ -1,6 +1,6 @@
 import { index, int, mysqlEnum, mysqlTable, uniqueIndex, varchar } from 'drizzle-orm/mysql-core'
-import { locatorLabels } from '#shared/api/sources.ts'
-import { idColumn, jsonDocument, primaryId, time } from './columns.ts'
+import { linkLabels } from '#shared/model/locators.ts'
+import { idColumn, jsonDocument, kept, primaryId, time } from './columns.ts'
 import { groups } from './groups.ts'
 import { pages } from './pages.ts'
 import { people } from './people.ts'
@@ -12,7 +12,7 @@ export const sources = mysqlTable(
     id: primaryId(),
     groupId: idColumn('group_id')
       .notNull()
-      .references(() => groups.id),
+      .references(() => groups.id, kept),
     key: varchar('citation_key', { length: 120 }).notNull(),
     csl: jsonDocument('csl').notNull(),
     doi: varchar('doi', { length: 200 }),
@@ -20,7 +20,7 @@ export const sources = mysqlTable(
     words: varchar('words', { length: 1000 }).notNull().default(''),
     addedBy: idColumn('added_by')
       .notNull()
-      .references(() => people.id),
+      .references(() => people.id, kept),
     addedAt: time('added_at').notNull(),
   },
   (table) => [
@@ -36,20 +36,20 @@ export const sourceLinks = mysqlTable(
     id: primaryId(),
     pageId: idColumn('page_id')
       .notNull()
-      .references(() => pages.id),
+      .references(() => pages.id, kept),
     sourceId: idColumn('source_id')
       .notNull()
-      .references(() => sources.id),
+      .references(() => sources.id, kept),
     target: mysqlEnum('target', ['page', 'parameter', 'line']).notNull(),
     symbol: varchar('symbol', { length: 64 }),
     line: int('line'),
     anchor: varchar('anchor', { length: 200 }),
-    label: mysqlEnum('label', locatorLabels),
+    label: mysqlEnum('label', linkLabels),
     locator: varchar('locator', { length: 60 }),
     quoted: varchar('quoted', { length: 200 }),
     addedBy: idColumn('added_by')
       .notNull()
-      .references(() => people.id),
+      .references(() => people.id, kept),
     addedAt: time('added_at').notNull(),
     removedAt: time('removed_at'),
   },

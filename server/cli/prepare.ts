@@ -1,4 +1,5 @@
 import { createDatabase } from '#drizzle/client.ts'
+import { OtherTables } from '#drizzle/migrate.ts'
 import { createCompute } from '#server/compute/compute.ts'
 import { ConfigError, readConfig } from '#server/config.ts'
 import { limits } from '#server/limits.ts'
@@ -54,7 +55,7 @@ async function main(): Promise<void> {
       loopback: config.loopback,
       now: new Date(),
       say: console.log,
-      startCompute: () => createCompute(limits.compute),
+      startCompute: () => createCompute(limits.loading),
     })
     const closing = [emptyLines(prepared), accountLines(prepared), setupLines(prepared, config.publicOrigin)]
       .filter((lines) => lines.length > 0)
@@ -70,7 +71,7 @@ async function main(): Promise<void> {
 try {
   await main()
 } catch (error) {
-  const expected = error instanceof ConfigError || error instanceof NotPrepared
+  const expected = error instanceof ConfigError || error instanceof NotPrepared || error instanceof OtherTables
   console.error(expected ? error.message : error)
   process.exit(expected ? wrongConfiguration : 1)
 }

@@ -16,7 +16,7 @@ try {
     loopback: true,
     now: new Date(),
     say: console.log,
-    startCompute: () => createCompute(limits.compute),
+    startCompute: () => createCompute(limits.loading),
   })
   if (library === 'loaded') console.log('The demonstration library is loaded.')
   else if (demonstration) console.log('The demonstration library is there already.')

@@ -1,6 +1,6 @@
 import { sql } from 'drizzle-orm'
 import { type RequestHandler, Router } from 'express'
-import { isMigrated } from '#drizzle/client.ts'
+import { isMigrated } from '#drizzle/migrate.ts'
 import type { Dependencies } from './context.ts'
 
 /** Set to false when the process is about to end, so that nothing new is sent here. */

@@ -1,6 +1,6 @@
 import { asc, eq, gt, sql } from 'drizzle-orm'
 import type { Queryable } from '#drizzle/client.ts'
-import { log, settings } from '#drizzle/schema/index.ts'
+import { log, people, settings } from '#drizzle/schema/index.ts'
 
 const tipName = 'log-tip'
 
@@ -15,6 +15,12 @@ export async function lockTip(tx: Queryable, first: unknown): Promise<unknown> {
     .onDuplicateKeyUpdate({ set: { name: sql`name` } })
   const [made] = await read()
   return made?.value
+}
+
+/** Keeps the person's row from being changed until the transaction ends. */
+export async function holdPerson(tx: Queryable, personId: number): Promise<void> {
+  // MariaDB knows no FOR SHARE, which the query builder would write.
+  await tx.execute(sql`select 1 from ${people} where ${people.id} = ${personId} lock in share mode`)
 }
 
 export async function readTip(db: Queryable): Promise<unknown> {

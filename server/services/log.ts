@@ -2,6 +2,7 @@ import { createHash } from 'node:crypto'
 import { z } from 'zod'
 import type { Database, Queryable, Transaction } from '#drizzle/client.ts'
 import * as queries from '#server/queries/log.ts'
+import { canonicalJson } from '#shared/model/canonical-json.ts'
 
 export interface LogEntry {
   at: Date
@@ -18,21 +19,10 @@ export interface LogEntry {
 const tip = z.object({ hash: z.string(), count: z.number().int() })
 const start = { hash: '0'.repeat(64), count: 0 }
 
-/** JSON with sorted keys: equal values give equal text. */
-function canonical(value: unknown): string {
-  if (Array.isArray(value)) return `[${value.map(canonical).join(',')}]`
-  if (typeof value === 'object' && value !== null) {
-    const entries = Object.entries(value).filter(([, member]) => member !== undefined)
-    entries.sort(([a], [b]) => (a < b ? -1 : 1))
-    return `{${entries.map(([key, member]) => `${JSON.stringify(key)}:${canonical(member)}`).join(',')}}`
-  }
-  return JSON.stringify(value ?? null)
-}
-
 const hashOf = (row: LogEntry & { previousHash: string }): string =>
   createHash('sha256')
     .update(
-      canonical([
+      canonicalJson([
         row.at.toISOString(),
         row.personId,
         row.act,
@@ -51,6 +41,8 @@ const hashOf = (row: LogEntry & { previousHash: string }): string =>
  * took other locks afterwards could wait in a circle. Never hand it secrets or equation text.
  */
 export async function record(tx: Transaction, entry: LogEntry): Promise<void> {
+  // The row's foreign key takes this lock as well: before the tip, or two acts could wait for each other.
+  if (entry.personId !== null) await queries.holdPerson(tx, entry.personId)
   const { hash: previousHash, count } = tip.parse(await queries.lockTip(tx, start))
   const hash = hashOf({ ...entry, previousHash })
   await queries.insert(tx, {

@@ -1,5 +1,6 @@
-import { type Database, migrate } from '#drizzle/client.ts'
+import type { Database } from '#drizzle/client.ts'
 import { dropTables } from '#drizzle/drop-tables.ts'
+import { migrate } from '#drizzle/migrate.ts'
 import { withNamedLock } from '#drizzle/named-lock.ts'
 import type { Compute } from '#server/compute/compute.ts'
 import { findUse } from '#server/queries/installation.ts'

@@ -1,7 +1,6 @@
-import { readdirSync } from 'node:fs'
 import { sql } from 'drizzle-orm'
 import { afterAll, beforeAll, describe, expect, test } from 'vitest'
-import { databaseErrorNumber, isDuplicate, isMigrated, migrate } from '#drizzle/client.ts'
+import { databaseErrorNumber, isDuplicate } from '#drizzle/client.ts'
 import { people } from '#drizzle/schema/index.ts'
 import { freshDatabase } from '#tests/support/database.ts'
 
@@ -52,24 +51,5 @@ describe('the connection', () => {
     // mysql2 once turned object parameters into pieces of SQL (fixed in 3.16.3): `email = {"email":true}` was true everywhere.
     const [rows] = await database.db.execute(sql`select id from people where email = ${{ email: true }}`)
     expect(rows).toEqual([])
-  })
-})
-
-describe('migrations', () => {
-  test('say whether the tables are at this code’s state', async () => {
-    expect(await isMigrated(database.db)).toBe(true)
-    await database.db.execute(sql`update __drizzle_migrations set created_at = created_at - 1`)
-    expect(await isMigrated(database.db)).toBe(false)
-    await database.db.execute(sql`update __drizzle_migrations set created_at = created_at + 1`)
-  })
-
-  test('may be run again and by several processes at once without effect', async () => {
-    await Promise.all([migrate(database.db), migrate(database.db), migrate(database.db)])
-    expect(await isMigrated(database.db)).toBe(true)
-    const [rows] = await database.db.execute(
-      sql`select count(*) as n, count(distinct hash) as kinds from __drizzle_migrations`,
-    )
-    const files = readdirSync('drizzle/migrations').filter((file) => file.endsWith('.sql')).length
-    expect(rows).toEqual([{ n: files, kinds: files }])
   })
 })

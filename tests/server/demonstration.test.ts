@@ -20,7 +20,7 @@ let compute: Compute
 const said: string[] = []
 beforeAll(async () => {
   t = await createTestApp()
-  compute = createCompute({ ...limits.compute, cardDeadline: 60_000 })
+  compute = createCompute(limits.loading)
   const prepared = await prepare()
   expect(prepared.library).toBe('loaded')
 })

@@ -635,6 +635,8 @@ describe('what is frozen', () => {
     'base_id = 1',
     "state = 'in-review'",
     "state = 'withdrawn', reason = 'forged'",
+    'settled_at = now(3)',
+    "reason = 'forged'",
   ])('is kept by the database itself: update revisions set %s', async (change) => {
     const code = await lib.makePage()
     const sent = await lib.send(lib.tabs.cora, code)
@@ -650,8 +652,35 @@ describe('what is frozen', () => {
     "update signatures set digest = 'sha256:0'",
     'delete from signatures',
     "update cards set card = '{}'",
+    'delete from cards',
+    "update remarks set text = 'forged'",
+    'delete from remarks',
+    'update log set at = now(3)',
+    'delete from log',
+    'update page_codes set number = number + 1',
+    'delete from page_codes',
   ])('nor by: %s', async (statement) => {
     await expect(lib.db.execute(sql.raw(statement))).rejects.toMatchObject({ cause: { errno: 1644 } })
+  })
+})
+
+describe('rows that others speak of', () => {
+  // 1452: the row pointed to is not there; 1451: rows that point here would be left behind.
+  test.each([
+    ['update pages set in_force_id = 999999', 1452],
+    ['update pages set in_review_id = 999999', 1452],
+    ['update pages set draft_card_id = 999999', 1452],
+    ["insert into page_codes (code, prefix, number, given_at) values ('NONE-01', 'NONE', 1, now(3))", 1452],
+    [
+      "insert into log (at, person_id, act, target, previous_hash, hash) values (now(3), 999999, 'x', 'x', '', '')",
+      1452,
+    ],
+    ['delete from people', 1451],
+    ['delete from `groups`', 1451],
+    ['delete from group_prefixes', 1451],
+    ['delete from pages', 1451],
+  ] as const)('stay, and are there: %s', async (statement, errno) => {
+    await expect(lib.db.execute(sql.raw(statement))).rejects.toMatchObject({ cause: { errno } })
   })
 })
 

@@ -1,7 +1,8 @@
 import { randomBytes } from 'node:crypto'
 import mysql from 'mysql2/promise'
 import { inject } from 'vitest'
-import { createDatabase, migrate } from '#drizzle/client.ts'
+import { createDatabase } from '#drizzle/client.ts'
+import { migrate } from '#drizzle/migrate.ts'
 
 /** A migrated database of this test file's own; `close` drops it. */
 export async function freshDatabase() {
