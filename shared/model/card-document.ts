@@ -97,6 +97,12 @@ export const runningWindow = z.object({
     .optional(),
 })
 
+/** `closed`: the branch comes back to where it was entered (a closed branch that meets no onset in range). */
+const cycleEnd = z.object({
+  kind: z.enum(['range-end', 'box-left', 'onset', 'homoclinic', 'budget', 'closed']),
+  p: finite,
+})
+
 const cyclePoint = z.object({
   p: finite,
   period: finite,
@@ -151,7 +157,9 @@ export const stabilityCard = z.object({
     .array(
       z.object({
         hopf: z.number().int().nonnegative().nullable(),
-        end: z.object({ kind: z.enum(['range-end', 'box-left', 'onset', 'homoclinic', 'budget']), p: finite }),
+        /** How it begins, where that is not an onset. */
+        start: cycleEnd.optional(),
+        end: cycleEnd,
         points: z.array(cyclePoint),
       }),
     )

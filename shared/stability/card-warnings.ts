@@ -1,4 +1,4 @@
-import type { CardPart, CardWarning } from '#shared/model/card-document.ts'
+import type { CardWarning } from '#shared/model/card-document.ts'
 import type { Expression, ModelSystem } from '#shared/model/expression.ts'
 import { type BranchSet, findOnPaths } from './branches.ts'
 import { controlOf, type Frame, stateOf } from './frame.ts'
@@ -207,10 +207,4 @@ const noWindow: Record<NoWindow, string> = {
 /** Why the card's window is null. */
 export function warnOfNoWindow(reason: NoWindow, warnings: WarningList): void {
   warnings.add({ code: reason === 'stopped' ? 'budget-spent' : 'no-window', message: noWindow[reason] })
-}
-
-/** Parts that were asked for and that this version does not compute: their absence is told, not left to be guessed. */
-export function warnOfMissingParts(parts: ReadonlySet<CardPart>, warnings: WarningList): void {
-  const tell = (message: string): void => warnings.add({ code: 'budget-spent', message })
-  if (parts.has('cycles')) tell('Cycle branches are not computed by this version.')
 }

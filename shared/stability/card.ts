@@ -20,11 +20,11 @@ import {
   type WarningList,
   warnOfBranches,
   warnOfHopf,
-  warnOfMissingParts,
   warnOfNoWindow,
   warnOfSearch,
   warnOfSpentBudget,
 } from './card-warnings.ts'
+import { type CyclesPart, computeCycles } from './cycles/compute-cycles.ts'
 import { engineVersion } from './engine.ts'
 import { createForms, type Forms } from './forms.ts'
 import { createFrame, type Frame, scaled } from './frame.ts'
@@ -84,7 +84,6 @@ export function analyse(document: unknown, options: AnalyseOptions = {}): Analys
     observed: observed.symbol,
   } as const
   const { body, operating } = partsOf(analysis, parts, warnings, options)
-  warnOfMissingParts(parts, warnings)
   let card: StabilityCard = { ...head, ...body, warnings: warnings.list() }
   const { frame } = analysis
   if (parts.has('hopf')) {
@@ -185,21 +184,46 @@ function partsOf(
     out.folds = folds.card
     out.branchPoints = branchPoints.card
   }
+  const indexIn = (points: readonly Float64Array[]) => (z: Float64Array) =>
+    points.findIndex((point) => samePoint(frame, point, z))
+  const lists = {
+    paths: set.paths,
+    hopf: listed,
+    foldIndex: indexIn(folds.points),
+    branchPointIndex: indexIn(branchPoints.points),
+  }
   if (parts.has('hopf')) {
     warnOfHopf(frame, listed, judgements, warnings)
     out.hopf = listed.map(({ card }) => card)
-    const indexIn = (points: readonly Float64Array[]) => (z: Float64Array) =>
-      points.findIndex((point) => samePoint(frame, point, z))
-    const lists = {
-      paths: set.paths,
-      hopf: listed,
-      foldIndex: indexIn(folds.points),
-      branchPointIndex: indexIn(branchPoints.points),
-    }
+  }
+  if (parts.has('hopf') || parts.has('cycles')) {
     options.onProgress?.('window', 0)
-    out.window = runningWindow(frame, states, lists, warnings)
+    const around = runningWindow(frame, states, lists, warnings)
+    out.window = around?.card ?? null
+    if (parts.has('cycles')) Object.assign(out, cyclesOf(frame, lists, around, warnings, options))
   }
   return { body: out, operating: listed.filter(({ card }) => card.operating) }
+}
+
+/** The oscillations, and the window with what lies beyond its ends. */
+function cyclesOf(
+  frame: Frame,
+  lists: WindowLists,
+  window: WindowAround | null,
+  warnings: WarningList,
+  options: AnalyseOptions,
+): Omit<CyclesPart, 'warnings'> {
+  const { shouldStop } = options
+  const input = { model: frame.model, lists, hopf: lists.hopf, window }
+  const { warnings: told, ...part } = computeCycles(shouldStop ? { ...input, shouldStop } : input)
+  for (const warning of told) warnings.add(warning)
+  return part
+}
+
+interface WindowAround {
+  card: RunningWindow
+  /** The steady state it is around, scaled. */
+  z: Float64Array
 }
 
 /** The window around the steady state that the model settles on from its start values. */
@@ -208,7 +232,7 @@ function runningWindow(
   states: readonly ListedState[],
   lists: WindowLists,
   warnings: WarningList,
-): RunningWindow | null {
+): WindowAround | null {
   const { system } = frame.model
   const none = (reason: Parameters<typeof warnOfNoWindow>[0]): null => {
     warnOfNoWindow(reason, warnings)
@@ -224,6 +248,7 @@ function runningWindow(
   const settled = settle(frame.model, parameters, start, widths, attractors, frame.budget)
   if (settled.kind !== 'settled') return none(settled.kind)
   const state = attractors[settled.attractor]
-  const window = state ? windowAround(frame, lists, scaled(frame, state.x, frame.own)) : null
-  return window ?? none('no-branch')
+  const z = state && scaled(frame, state.x, frame.own)
+  const card = z ? windowAround(frame, lists, z) : null
+  return z && card ? { card, z } : none('no-branch')
 }

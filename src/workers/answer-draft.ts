@@ -24,6 +24,7 @@ export function answerDraft(id: number, draft: DraftContent, post: (reply: Worke
   const postCard = (card: StabilityCard, complete: boolean) =>
     post({ kind: 'card', id, document, card, complete, helperValues: valuesOf(system, card) })
   const result = analyse(document, {
+    parts: ['steady', 'hopf'],
     onProgress: (stage, share) => post({ kind: 'progress', id, stage, share }),
     onCard: (card) => postCard(card, false),
   })

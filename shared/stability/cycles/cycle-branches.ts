@@ -1,6 +1,6 @@
 import type { CycleAt } from './branch-point.ts'
 import { cycleAt } from './branch-point.ts'
-import { sizeOf } from './cycle.ts'
+import { type Cycle, extentOf, sizeOf } from './cycle.ts'
 import { type CycleSpace, controlRow, correctCycle } from './cycle-system.ts'
 import { firstSize, startAtOnset } from './start-at-onset.ts'
 import {
@@ -84,33 +84,30 @@ export interface CyclePosition {
 }
 
 /**
- * The place on the branches of a cycle. Straight lines between points say where it may lie (20 %), the branch itself,
- * computed at this control value from the nearer point, whether it does: period and extremes within 1e-4.
+ * The place on the branches of a cycle, or null. The branch itself is computed at this control value from its points
+ * nearby; it is the same cycle where the period agrees within 1e-4 and every state's extent within 1 % of the cycle's size.
  */
 export function positionOf(space: CycleSpace, branches: readonly CycleBranch[], at: CycleAt): CyclePosition | null {
-  const { p } = at.solution.cycle
-  let best: (CyclePosition & { off: number }) | null = null
+  const { p, period } = at.solution.cycle
   for (const branch of branches) {
     for (const { segment, value, nearer } of crossings(branch, p)) {
-      if (offBy(at, value) > 0.2) continue
+      if (Math.abs(value.period / period - 1) > 0.2) continue
       const there = { ...nearer.solution.cycle, p }
       const solution = correctCycle(space, there, nearer.solution.cycle, controlRow(there))
-      const found = solution && cycleAt(space.frame, solution)
-      const off = found ? offBy(at, { ...found.measures, period: found.solution.cycle.period }) : offBy(at, value)
-      if (off < (found ? 1e-4 : 0.02) && (!best || off < best.off)) best = { branch, segment, off }
+      if (solution && isSame(space.n, solution.cycle, at.solution.cycle)) return { branch, segment }
     }
   }
-  return best
+  return null
 }
 
-/** Largest difference in period and extremes, as a share of period and amplitude. */
-function offBy({ solution, measures }: CycleAt, value: { period: number; max: number; min: number }): number {
-  const size = measures.amplitude + 1e-300
-  return Math.max(
-    Math.abs(value.period / solution.cycle.period - 1),
-    Math.abs(value.max - measures.max) / size,
-    Math.abs(value.min - measures.min) / size,
-  )
+function isSame(n: number, a: Cycle, b: Cycle): boolean {
+  if (Math.abs(a.period / b.period - 1) > 1e-4) return false
+  const slack = 0.01 * sizeOf(b, n)
+  for (let i = 0; i < n; i++) {
+    const [x, y] = [extentOf(a, n, i), extentOf(b, n, i)]
+    if (Math.abs(x.low - y.low) > slack || Math.abs(x.high - y.high) > slack) return false
+  }
+  return true
 }
 
 /** What straight lines between a branch's points say where they cross a control value. */

@@ -58,10 +58,21 @@ export function turningPoints(frame: Frame, points: readonly WalkedPoint[]): Wal
     let j = i + 1
     const here = (folds[i] as WalkedPoint).at.solution.cycle.p
     while (j < folds.length && Math.abs((folds[j] as WalkedPoint).at.solution.cycle.p - here) < 1e-8) j++
-    if ((j - i) % 2 === 1) out.push(folds[(i + j - 1) >> 1] as WalkedPoint)
+    if ((j - i) % 2 === 1) out.push(outermost(points, folds.slice(i, j)))
     i = j
   }
   return out
+}
+
+/** Of several turns that are one, the furthest in the direction in which the branch arrives. */
+function outermost(points: readonly WalkedPoint[], group: readonly WalkedPoint[]): WalkedPoint {
+  const first = group[0] as WalkedPoint
+  const here = first.at.solution.cycle.p
+  const before = points
+    .slice(0, points.indexOf(first))
+    .findLast(({ at }) => Math.abs(at.solution.cycle.p - here) > 1e-6)
+  const sense = before ? Math.sign(here - before.at.solution.cycle.p) : 0
+  return group.reduce((best, each) => (sense * (each.at.solution.cycle.p - best.at.solution.cycle.p) > 0 ? each : best))
 }
 
 function cyclePoint(frame: Frame, { solution, measures, stable }: CycleAt): CardPoint {

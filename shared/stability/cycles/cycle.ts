@@ -58,16 +58,22 @@ export function onMesh(cycle: Cycle, n: number, mesh: Float64Array): Cycle {
   return { mesh, u: transfer(cycle.mesh, cycle.u, n, mesh), period: cycle.period, p: cycle.p }
 }
 
+/** Lowest and highest value of scaled state i at the nodes. */
+export function extentOf({ u }: Cycle, n: number, i: number): { low: number; high: number } {
+  let low = Number.POSITIVE_INFINITY
+  let high = Number.NEGATIVE_INFINITY
+  for (let k = i; k < u.length; k += n) {
+    low = Math.min(low, u[k] as number)
+    high = Math.max(high, u[k] as number)
+  }
+  return { low, high }
+}
+
 /** Half the largest peak-to-peak of any scaled state. */
 export function sizeOf(cycle: Cycle, n: number): number {
   let size = 0
   for (let i = 0; i < n; i++) {
-    let low = Number.POSITIVE_INFINITY
-    let high = Number.NEGATIVE_INFINITY
-    for (let k = i; k < cycle.u.length; k += n) {
-      low = Math.min(low, cycle.u[k] as number)
-      high = Math.max(high, cycle.u[k] as number)
-    }
+    const { low, high } = extentOf(cycle, n, i)
     size = Math.max(size, (high - low) / 2)
   }
   return size

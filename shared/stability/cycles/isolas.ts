@@ -42,9 +42,14 @@ export function growFromIntegration(
       const { at } = destination
       if (positionOf(space, branches, at) || isMultiple(branches, at)) continue
       const branch = growFromCycle(space, at, onsets)
-      if (!branch) continue
+      // one that reaches an onset which has its branch already is that branch, met on the way
+      if (!branch || hasBranch(branches, branch.hopf)) continue
       branches.push(branch)
       added++
     }
   }
+}
+
+function hasBranch(branches: readonly CycleBranch[], onset: number | null): boolean {
+  return onset !== null && branches.some(({ hopf, end }) => hopf === onset || end.onset === onset)
 }

@@ -3,6 +3,7 @@ import type { BranchPath } from '../branches.ts'
 import { distance, type Frame, snapped } from '../frame.ts'
 import type { CycleAt } from './branch-point.ts'
 import { isStretch, merged, type Stretch1 } from './coexisting.ts'
+import { extentOf } from './cycle.ts'
 import { type CycleBranch, crossings } from './cycle-branches.ts'
 import type { CycleSpace } from './cycle-system.ts'
 import { follow } from './follow.ts'
@@ -67,14 +68,8 @@ function surrounds(frame: Frame, { points }: CycleBranch, line: WindowLine): boo
 }
 
 function isAround({ n }: Frame, { at }: WalkedPoint, { z }: SteadyNear): boolean {
-  const { u } = at.solution.cycle
   for (let i = 0; i < n; i++) {
-    let low = Number.POSITIVE_INFINITY
-    let high = Number.NEGATIVE_INFINITY
-    for (let k = i; k < u.length; k += n) {
-      low = Math.min(low, u[k] as number)
-      high = Math.max(high, u[k] as number)
-    }
+    const { low, high } = extentOf(at.solution.cycle, n, i)
     const slack = 0.25 * (high - low) + 1e-9
     const value = z[i] as number
     if (value < low - slack || value > high + slack) return false

@@ -63,13 +63,19 @@ function hasPairOnCircle({ solution: { re, im, trivialError } }: CycleAt): boole
   return re.some((x, i) => (im[i] as number) > 1e-6 && Math.abs(Math.hypot(x, im[i] as number) - 1) < 1e-4)
 }
 
+/** The turning point on a stretch, or null. */
+export function foldOn(space: CycleSpace, stretch: Stretch): { at: CycleAt; s: number } | null {
+  if (!(foldRate(stretch.a) * foldRate(stretch.b) < 0)) return null
+  // where the branch is all but vertical the rate itself is small
+  const small = Math.min(1e-7, 1e-3 * Math.max(Math.abs(foldRate(stretch.a)), Math.abs(foldRate(stretch.b))))
+  return locateOn(space, stretch, foldRate, small)
+}
+
 /** All special points on a stretch, in the order of the walk. */
 export function specialsOn(space: CycleSpace, stretch: Stretch): Special[] {
   const found: Special[] = []
-  if (foldRate(stretch.a) * foldRate(stretch.b) < 0) {
-    const fold = locateOn(space, stretch, foldRate, 1e-7)
-    if (fold) found.push({ kind: 'fold', ...fold })
-  }
+  const fold = foldOn(space, stretch)
+  if (fold) found.push({ kind: 'fold', ...fold })
   if (doublingTest(stretch.a) * doublingTest(stretch.b) < 0) {
     const doubling = locateOn(space, stretch, doublingTest, 1e-11)
     if (doubling && hasDoubling(doubling.at)) found.push({ kind: 'period-doubling', ...doubling })

@@ -6,7 +6,7 @@ import { type Cycle, directionDot, moved, onMesh, scaledDirection, sizeOf } from
 import { type CycleSpace, correctCycle, mostIntervals, type Solution } from './cycle-system.ts'
 import { fillBetween } from './fill.ts'
 import { hugsSaddle, limitOfControl, type PeriodRecord, slowestPoint } from './homoclinic.ts'
-import { type Special, specialsOn } from './special-points.ts'
+import { foldOn, type Special, specialsOn } from './special-points.ts'
 
 /** An onset at which a branch of cycles may begin or end (scaled). */
 export interface Onset {
@@ -60,11 +60,28 @@ export function walkCycles(space: CycleSpace, start: CycleAt, options: WalkOptio
   let current = start
   let fewest = coarsest
   let step = 0.3 * sizeOf(start.solution.cycle, n)
+  /** Where the last step set out, and how many points there were then. */
+  let prior: { at: CycleAt; length: number } | null = null
   const most = options.mostPoints ?? 900
   const finish = (kind: CycleEnd['kind'], p = current.solution.cycle.p, onset?: number): CycleWalk => ({
     points,
     end: onset === undefined ? { kind, p } : { kind, p, onset },
   })
+  /** Goes on from the same point on another mesh; where the branch is all but vertical, it may turn out to lie past the turn. */
+  const moveTo = (same: CycleAt): void => {
+    if (current.solution.tangent.p * same.solution.tangent.p < 0) {
+      const back = prior && remeshed(space, prior.at, same.solution.cycle.mesh.length - 1)
+      if (prior && back && back.solution.tangent.p * same.solution.tangent.p < 0) {
+        points.length = prior.length
+        fewest = Math.max(fewest, back.solution.cycle.mesh.length - 1)
+        current = back
+        prior = null
+        return
+      }
+      points.push({ at: same, mark: 'fold' })
+    }
+    current = same
+  }
   for (let count = 0; points.length < most && count < 1200; count++) {
     if (frame.budget.spent()) return finish('budget')
     const taken = stepFrom(space, current, step)
@@ -75,29 +92,38 @@ export function walkCycles(space: CycleSpace, start: CycleAt, options: WalkOptio
     }
     const { next, stretch, grow } = taken
     const specials = specialsOn(space, stretch)
-    const fold = specials.find(({ kind }) => kind === 'fold')
+    let fold = specials.find(({ kind }) => kind === 'fold')
     const turns = current.solution.tangent.p * next.solution.tangent.p < 0
     if (turns && !fold && step > 1e-5) {
       // it turns here but the place could not be computed: come nearer first
       step /= 2.5
       continue
     }
-    if (fold && isDoubtful(frame, fold, shortest) && !isTrusted(space, stretch, fold)) {
+    if (turns && !fold) {
+      fold = { kind: 'fold', at: flatter(current, next), s: 1 }
+      specials.push(fold)
+    }
+    const refined = fold ? refinedFold(space, stretch, fold) : null
+    if (fold && !refined) {
       const finer = Math.min(mostIntervals, 2 * (current.solution.cycle.mesh.length - 1))
       const again = finer > fewest ? remeshed(space, current, finer) : null
+      if (again) {
+        fewest = finer
+        moveTo(again)
+        continue
+      }
       const limit = limitOfControl(history)
-      if (!again) return finish(limit ? 'homoclinic' : 'budget', limit?.p)
-      fewest = finer
-      current = again
-      continue
+      if (isDoubtful(frame, fold, shortest)) return finish(limit ? 'homoclinic' : 'budget', limit?.p)
     }
+    if (refined) fewest = coarsest
     const exit = rangeExit(frame, next.solution.cycle.p)
     if (exit !== null && !fold) {
       const last = landOn(space, stretch, exit)
-      if (last) append(space, points, current, [], last)
+      if (last) append(space, points, current, [], last, null)
       return finish('range-end', exit)
     }
-    append(space, points, current, specials, next)
+    prior = { at: current, length: points.length }
+    append(space, points, current, specials, next, refined)
     const { cycle } = next.solution
     if (exit !== null) return finish('range-end', exit)
     if (leavesFarBox(frame, cycle)) return finish('box-left', cycle.p)
@@ -120,7 +146,7 @@ export function walkCycles(space: CycleSpace, start: CycleAt, options: WalkOptio
     const wanted = intervalsFor(n, cycle, fewest)
     const have = cycle.mesh.length - 1
     if (count % 3 === 2 || wanted > 1.15 * have) {
-      current = remeshed(space, current, wanted) ?? current
+      moveTo(remeshed(space, current, wanted) ?? current)
     }
   }
   return finish('budget')
@@ -189,21 +215,29 @@ function transferTo(
   return solution && cycleAt(frame, solution)
 }
 
+/** Of two points on both sides of a turn the one nearer to it. */
+function flatter(a: CycleAt, b: CycleAt): CycleAt {
+  return Math.abs(a.solution.tangent.p) < Math.abs(b.solution.tangent.p) ? a : b
+}
+
 /** A turning point of a slow cycle that all but stops somewhere may be the mesh's own. */
 function isDoubtful(frame: Frame, { at: { solution } }: Special, shortest: number): boolean {
   return solution.cycle.period > 1.5 * shortest && slowestPoint(frame, solution.cycle).ratio < 0.05
 }
 
-/** Whether a turning point is still there on a mesh twice as fine: near a homoclinic orbit coarse meshes invent one. */
-function isTrusted(space: CycleSpace, { a, b }: Stretch, fold: Special): boolean {
+/**
+ * The turning point of a stretch on a mesh twice as fine, or null where there is none on it: near a homoclinic orbit coarse
+ * meshes invent one, and where the branch is all but vertical they misplace it.
+ */
+function refinedFold(space: CycleSpace, { a, b }: Stretch, fold: Special): CycleAt | null {
   const { cycle } = fold.at.solution
   const count = Math.min(mostIntervals, 2 * (cycle.mesh.length - 1))
   const { density, total } = errorDensity(cycle.mesh, cycle.u, space.n)
   const mesh = equidistributed(cycle.mesh, density, total, count)
   const ends = [a, b].map(({ solution }) => transferTo(space, space.frame, solution.cycle, solution.tangent, mesh))
   const [first, last] = ends
-  if (!first || !last) return false
-  return first.solution.tangent.p * last.solution.tangent.p < 0
+  const stretch = first && last && stretchBetween(space.n, first, last)
+  return stretch ? (foldOn(space, stretch)?.at ?? null) : null
 }
 
 function rangeExit(frame: Frame, p: number): number | null {
@@ -226,11 +260,12 @@ function append(
   from: CycleAt,
   specials: readonly Special[],
   next: CycleAt,
+  refined: CycleAt | null,
 ): void {
   let before = from
   for (const { at, kind } of specials) {
     for (const between of fillBetween(space, before, at)) points.push({ at: between, mark: null })
-    points.push({ at, mark: kind })
+    points.push({ at: kind === 'fold' ? (refined ?? at) : at, mark: kind })
     before = at
   }
   for (const between of fillBetween(space, before, next)) points.push({ at: between, mark: null })
