@@ -49,8 +49,9 @@ describe('a good document', () => {
     const read = stabilityCard.parse(JSON.parse(stdout))
     // 1 + A² with A = 1.5
     expect(read.hopf?.[0]?.p).toBeCloseTo(3.25, 11)
-    // everything but the map by default; what this version cannot compute is told
-    expect(read.warnings.map(({ message }) => message)).toEqual(['Cycle branches are not computed by this version.'])
+    // everything but the map by default
+    expect(read.warnings).toEqual([])
+    expect(read.cycles).toMatchObject([{ hopf: 0, end: { kind: 'range-end', p: 5 } }])
     expect(read.map).toBeUndefined()
   })
 
