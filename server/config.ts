@@ -19,6 +19,8 @@ export interface Config {
   /** Number of proxies in front whose X-Forwarded-* headers are believed. */
   trustProxy: number
   databaseUrl: string
+  /** Where the database that npm start runs and the session secret are kept. */
+  dataDirectory: string
   /** The first signs; the others still open sessions made with them (rotation). */
   sessionSecrets: readonly [string, ...string[]]
   logLevel: 'debug' | 'info' | 'warn' | 'error' | 'silent'
@@ -150,6 +152,7 @@ export function readConfig(environment: Environment): Config {
     secure,
     trustProxy,
     databaseUrl: env.DATABASE_URL,
+    dataDirectory: env.BRINKBOOK_DATA,
     sessionSecrets: readSecrets(env.SESSION_SECRET, env.BRINKBOOK_DATA),
     logLevel: env.BRINKBOOK_LOG_LEVEL,
   }

@@ -56,6 +56,9 @@ export const limits = {
     /** Refused sign-ins (and refused passwords of a signed-in person). */
     signInByAccount: 5,
     signInByAddress: 20,
+    /** Pasted texts read for one person in `importsWindow`: each may hold many sources and occupies a child process. */
+    imports: 60,
+    importsWindow: hour,
     /** Cards computed for one person on request. */
     cards: 30,
     cardsAtOnce: 2,
@@ -64,8 +67,8 @@ export const limits = {
   /** While the demonstration library is loaded nobody waits for an answer, and a slow machine has to get there too. */
   loading: { ...compute, cardDeadline: minute },
   idempotencyKeys: { keep: 1 * day },
-  /** `unsaved`: edits that wait longer for the database make the process unready. */
-  ready: { ping: 1 * second, unsaved: 5 * second },
+  /** `unsaved`: edits that wait longer for the database make the process unready; `diskFree`: less of the disk free does, as a share. */
+  ready: { ping: 1 * second, unsaved: 5 * second, diskFree: 0.1 },
   /** From the first SIGTERM to the end. */
   shutdown: { drain: 10 * second },
 }

@@ -1,3 +1,4 @@
+import { statfs } from 'node:fs/promises'
 import { sql } from 'drizzle-orm'
 import { type RequestHandler, Router } from 'express'
 import { isMigrated } from '#drizzle/migrate.ts'
@@ -19,20 +20,33 @@ async function databaseReady({ db, limits }: Dependencies): Promise<boolean> {
   return Promise.race([ping(), late]).catch(() => false)
 }
 
-/** /healthz: the process answers. /readyz: it may be sent requests (database there, tables up to date, not stopping). No details. */
+/** Enough of the data directory's disk is free; true where there is no such directory here (a database elsewhere). */
+async function diskReady({ config, limits }: Dependencies): Promise<boolean> {
+  const disk = await statfs(config.dataDirectory).catch(() => null)
+  if (!disk || disk.blocks === 0) return true
+  // As df counts it: blocks kept for root are neither free nor used.
+  const usable = disk.blocks - disk.bfree + disk.bavail
+  return disk.bavail > limits.ready.diskFree * usable
+}
+
+/**
+ * /healthz: the process answers. /readyz: it may be sent requests (database there, tables up to date, edits saved, disk not
+ * full, not stopping). No figures: whoever asks need not be known. The disk is named, since only people can mend it.
+ */
 export function health(dependencies: Dependencies, readiness: Readiness): Router {
   const router = Router()
-  const answer = (ok: boolean, response: Parameters<RequestHandler>[1]) => {
+  const answer = (word: 'ok' | 'not ready' | 'not ready: disk', response: Parameters<RequestHandler>[1]) => {
     response.setHeader('Cache-Control', 'no-store')
     response
-      .status(ok ? 200 : 503)
+      .status(word === 'ok' ? 200 : 503)
       .type('text/plain')
-      .send(ok ? 'ok\n' : 'not ready\n')
+      .send(`${word}\n`)
   }
-  router.get('/healthz', (_request, response) => answer(true, response))
+  router.get('/healthz', (_request, response) => answer('ok', response))
   router.get('/readyz', async (_request, response) => {
     const well = readiness.accepting && readiness.checks.every((check) => check())
-    answer(well && (await databaseReady(dependencies)), response)
+    if (!well || !(await databaseReady(dependencies))) answer('not ready', response)
+    else answer((await diskReady(dependencies)) ? 'ok' : 'not ready: disk', response)
   })
   return router
 }

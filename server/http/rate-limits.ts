@@ -4,7 +4,7 @@ import { z } from 'zod'
 import type { Limits } from '#server/limits.ts'
 import { AppError } from './app-error.ts'
 
-export type LimitName = 'signInByAccount' | 'signInByAddress' | 'cards'
+export type LimitName = 'signInByAccount' | 'signInByAddress' | 'cards' | 'imports'
 
 export interface Limiter {
   /** Counts one; throws 429 where it was one too many within the window. */
@@ -26,7 +26,7 @@ export const addressKey = (request: Request): string => ipKeyGenerator(request.i
 
 /** Counters for single acts, in this process's memory; the window begins with the first count. */
 export function createLimiter(limits: Limits, now: () => Date): Limiter {
-  const { window } = limits.rate
+  const windowOf = (name: LimitName) => (name === 'imports' ? limits.rate.importsWindow : limits.rate.window)
   const counters = new Map<string, { count: number; until: number }>()
   const forgetOld = (time: number) => {
     for (const [key, counter] of counters) if (counter.until <= time) counters.delete(key)
@@ -37,7 +37,7 @@ export function createLimiter(limits: Limits, now: () => Date): Limiter {
       if (counters.size > 10_000) forgetOld(time)
       const id = `${name} ${key}`
       const known = counters.get(id)
-      const counter = known && known.until > time ? known : { count: 0, until: time + window }
+      const counter = known && known.until > time ? known : { count: 0, until: time + windowOf(name) }
       counters.set(id, counter)
       if (counter.count >= limits.rate[name]) throw tooMany(counter.until - time)
       counter.count++

@@ -1,4 +1,4 @@
-import { and, count, eq, inArray, isNull, sql } from 'drizzle-orm'
+import { and, asc, count, eq, inArray, isNull, sql } from 'drizzle-orm'
 import type { Queryable } from '#drizzle/client.ts'
 import { groupPrefixes, groups, invitations, memberships, oneTimeLinks, pages, people } from '#drizzle/schema/index.ts'
 import type { MemberRole } from '#shared/api/roles.ts'
@@ -110,6 +110,22 @@ export async function countMaintainers(db: Queryable, groupId: number): Promise<
     .innerJoin(people, eq(people.id, memberships.personId))
     .where(and(eq(memberships.groupId, groupId), eq(memberships.role, 'maintainer'), eq(people.disabled, false)))
   return row?.n ?? 0
+}
+
+/** Locks the groups that a person maintains until the transaction ends. */
+export async function lockMaintained(tx: Queryable, personId: number): Promise<{ id: number; name: string }[]> {
+  const maintained = await tx
+    .select({ id: memberships.groupId })
+    .from(memberships)
+    .where(and(eq(memberships.personId, personId), eq(memberships.role, 'maintainer')))
+  if (maintained.length === 0) return []
+  const ids = maintained.map((row) => row.id)
+  return tx
+    .select({ id: groups.id, name: groups.name })
+    .from(groups)
+    .where(inArray(groups.id, ids))
+    .orderBy(asc(groups.id))
+    .for('update')
 }
 
 export async function setRole(tx: Queryable, groupId: number, personId: number, role: MemberRole): Promise<void> {

@@ -111,6 +111,19 @@ export async function noteWriter(
     .onDuplicateKeyUpdate({ set: { last: now } })
 }
 
+/** Makes the writers of one generation of a draft writers of another, with their times. */
+export async function copyWriters(
+  tx: Queryable,
+  pageId: number,
+  { from, to }: { from: number; to: number },
+): Promise<void> {
+  const rows = await tx
+    .select()
+    .from(draftWriters)
+    .where(and(eq(draftWriters.pageId, pageId), eq(draftWriters.generation, from)))
+  if (rows.length > 0) await tx.insert(draftWriters).values(rows.map((row) => ({ ...row, generation: to })))
+}
+
 /** Who wrote in a draft, in the order they began. */
 export async function listWriters(
   db: Queryable,

@@ -1,4 +1,5 @@
 import { type Api, mount } from '#server/http/mount.ts'
+import { addressKey } from '#server/http/rate-limits.ts'
 import * as invitations from '#server/services/invitations.ts'
 import * as links from '#server/services/links.ts'
 import * as passwordLinks from '#server/services/password-links.ts'
@@ -29,10 +30,15 @@ export function linkRoutes(api: Api): void {
   mount(api, readInvitation, ({ db, params, now }) => invitations.read(db, { ...params, now }))
 
   mount(api, acceptInvitation, async (context) => {
-    const { db, params, body, now, requestId, config, limiter, events, session: control } = context
-    limiter.take('signInByAccount', params.token)
+    const { db, params, body, now, requestId, config, limiter, events, session: control, request } = context
+    // Counted like sign-ins, by who is invited and not by the link: a new link gives no new guesses.
+    const address = addressKey(request)
+    limiter.take('signInByAddress', address)
+    const { email } = await invitations.read(db, { ...params, now })
+    limiter.take('signInByAccount', email)
     const known = await invitations.accept(db, { ...params, ...body, now, requestId })
-    limiter.giveBack('signInByAccount', params.token)
+    limiter.giveBack('signInByAddress', address)
+    limiter.giveBack('signInByAccount', email)
     events.personChanged(known.personId)
     await control.begin({ id: known.personId, epoch: known.epoch })
     return session.read(db, { personId: known.personId, loopback: config.loopback })

@@ -13,7 +13,8 @@ export function sourceRoutes(api: Api): void {
   mount(api, listSources, allOf)
 
   mount(api, addSources, async (context) => {
-    const { db, compute, page, body, events } = context
+    const { db, compute, page, body, events, person, limiter } = context
+    if (body.from === 'pasted') limiter.take('imports', String(person.id))
     const found = body.from === 'pasted' ? await fromPasted(compute, body.pasted) : fromForm(body)
     await sources.add(db, page, { ...actorOf(context), sources: found })
     events.draftChanged(page.id)

@@ -40,7 +40,10 @@ async function find(db: Queryable, token: string, now: Date) {
 }
 
 /** What the screen of an invitation says. */
-export async function read(db: Queryable, input: { token: string; now: Date }): Promise<OneTimeLink> {
+export async function read(
+  db: Queryable,
+  input: { token: string; now: Date },
+): Promise<OneTimeLink & { email: string }> {
   const { link, invitation, groupName, account } = await find(db, input.token, input.now)
   return {
     kind: 'invitation',

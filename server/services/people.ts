@@ -1,5 +1,6 @@
-import type { Database, Queryable } from '#drizzle/client.ts'
+import type { Database, Queryable, Transaction } from '#drizzle/client.ts'
 import { AppError } from '#server/http/app-error.ts'
+import * as groupQueries from '#server/queries/groups.ts'
 import * as linkQueries from '#server/queries/links.ts'
 import * as queries from '#server/queries/people.ts'
 import * as sessionQueries from '#server/queries/session.ts'
@@ -19,11 +20,20 @@ export async function list(db: Queryable, id?: number): Promise<Person[]> {
   }))
 }
 
+async function keepOneMaintainer(tx: Transaction, group: { id: number; name: string }): Promise<void> {
+  if ((await groupQueries.countMaintainers(tx, group.id)) > 0) return
+  throw new AppError(
+    'last-maintainer',
+    `Nobody else who can sign in would be a maintainer of ${group.name}. Appoint another one first.`,
+  )
+}
+
 /**
  * Gives or takes the administrator's role, disables or enables an account. Disabling voids every session and link of
  * the person.
  *
- * @throws {AppError} `not-found`; `last-maintainer` where no administrator would be left.
+ * @throws {AppError} `not-found`; `last-maintainer` where no administrator would be left, or a group without a maintainer who
+ *                    can sign in.
  */
 export async function change(
   db: Database,
@@ -31,6 +41,8 @@ export async function change(
 ): Promise<Person> {
   const { personId, by, now, requestId } = input
   await db.transaction(async (tx) => {
+    // Groups come before people in the order of locks, as where a group's members change.
+    const kept = input.disabled ? await groupQueries.lockMaintained(tx, personId) : []
     const administrators = await queries.lockAdministrators(tx)
     const person = await sessionQueries.lockPerson(tx, personId)
     if (!person) throw new AppError('not-found', 'There is no such person.')
@@ -48,6 +60,7 @@ export async function change(
       await sessionQueries.raiseEpoch(tx, personId)
       await sessionQueries.endAllSignIns(tx, personId, now)
       await linkQueries.voidAll(tx, 'password', personId, now)
+      for (const group of kept) await keepOneMaintainer(tx, group)
     }
     await record(tx, {
       at: now,

@@ -137,6 +137,28 @@ describe('problem details', () => {
   })
 })
 
+describe('a disk that is nearly full', () => {
+  test('makes the process unready, in a word and without a figure; a tenth free is enough', async () => {
+    expect(limits.ready.diskFree).toBe(0.1)
+    const full = await createTestApp({
+      config: { dataDirectory: '.' },
+      // More than everything: no disk has so much free.
+      limits: (given) => ({ ...given, ready: { ...given.ready, diskFree: 1 } }),
+    })
+    const agent = full.people.signedOut()
+    const answer = await agent.get('/readyz')
+    expect([answer.status, answer.text]).toEqual([503, 'not ready: disk\n'])
+    expect((await agent.get('/healthz')).text).toBe('ok\n')
+    await full.close()
+    const elsewhere = await createTestApp({
+      config: { dataDirectory: 'no/such/directory' },
+      limits: (given) => ({ ...given, ready: { ...given.ready, diskFree: 1 } }),
+    })
+    expect((await elsewhere.people.signedOut().get('/readyz')).text).toBe('ok\n')
+    await elsewhere.close()
+  })
+})
+
 describe('headers', () => {
   const everywhere = async () => [
     await admin.get('/healthz'),

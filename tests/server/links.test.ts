@@ -178,5 +178,35 @@ describe('links to hand over', () => {
       expectProblem(await t.people.signedOut().post(address).send({ password: 'wrong' }), 'wrong-password')
     }
     expectProblem(await t.people.signedOut().post(address).send({ password }), 'too-many')
+    // Neither a newer link nor the sign-in form gives more guesses.
+    const newer = await invite(di.email.toUpperCase())
+    expectProblem(await t.people.signedOut().post(newer).send({ password }), 'too-many')
+    const signIn = await t.people.signedOut().post(`${apiRoot}/session`).send({ email: di.email, password })
+    expectProblem(signIn, 'too-many')
+    t.clock.ahead = limits.rate.window + 1000
+    expect((await t.people.signedOut().post(newer).send({ password })).status).toBe(201)
   })
+})
+
+test('guesses from one network address are limited whatever the invitations; accepting is not counted', async () => {
+  const t = await createTestApp()
+  const admin = await t.people.signedIn(await t.people.person('Site Admin', { administrator: true }))
+  await t.people.group('Kiln Lab', 'KLN')
+  const accept = async (email: string, body: object) => {
+    const answer = await admin.post(`${apiRoot}/groups/kiln-lab/invitations`).send({ email, role: 'reader' })
+    return t.people
+      .signedOut()
+      .post(`${apiRoot}/invitations/${tokenOf(answer.body.link)}`)
+      .send(body)
+  }
+  for (let i = 0; i < limits.rate.signInByAddress; i++) {
+    const person = await t.people.person(`Guest ${i}`)
+    expectProblem(await accept(person.email, { password: 'wrong' }), 'wrong-password')
+  }
+  expectProblem(await accept('fresh@example.org', { name: 'Fresh', password: good }), 'too-many')
+  t.clock.ahead = limits.rate.window + 1000
+  for (let i = 0; i <= limits.rate.signInByAddress; i++) {
+    expect((await accept(`welcome${i}@example.org`, { name: 'Welcome', password: good })).status).toBe(201)
+  }
+  await t.close()
 })

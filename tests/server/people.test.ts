@@ -83,6 +83,34 @@ describe('the administrator', () => {
     expect((await admin.get(people)).status).toBe(200)
   })
 
+  test('cannot disable the only maintainer of a group who can sign in', async () => {
+    const [mia, ola] = [await t.people.person('Mia Keeper'), await t.people.person('Ola Keeper')]
+    await t.people.group('Loom Lab', 'LOM', [
+      [mia, 'maintainer'],
+      [ola, 'maintainer'],
+    ])
+    await t.people.group('Reading Lab', 'RDL', [[mia, 'reader']])
+    expect((await change(ola, { disabled: true })).status).toBe(200)
+    const refused = expectProblem(await change(mia, { disabled: true }), 'last-maintainer')
+    expect(refused.detail).toContain('Loom Lab')
+    // Nothing of the refused act is done: her sessions stand.
+    const agent = await t.people.signedIn(mia)
+    expectProblem(await change(mia, { disabled: true, administrator: true }), 'last-maintainer')
+    expect((await agent.get(`${apiRoot}/session`)).body.me).toMatchObject({ id: mia.id, administrator: false })
+    await change(ola, { disabled: false })
+    expect((await change(mia, { disabled: true })).status).toBe(200)
+  })
+
+  test('of two maintainers disabled at once one stays', async () => {
+    const [una, ivo] = [await t.people.person('Una Pair'), await t.people.person('Ivo Pair')]
+    await t.people.group('Pair Lab', 'PRL', [
+      [una, 'maintainer'],
+      [ivo, 'maintainer'],
+    ])
+    const answers = await Promise.all([change(una, { disabled: true }), change(ivo, { disabled: true })])
+    expect(answers.map((answer) => answer.status).sort()).toEqual([200, 409])
+  })
+
   test('gets 404 for who does not exist', async () => {
     expectProblem(await admin.patch(`${people}/999999`).send({ disabled: true }), 'not-found')
     expectProblem(await admin.post(`${people}/999999/password-link`), 'not-found')

@@ -92,6 +92,16 @@ const changesTheDraft: Matrix = {
   contributor: [200, 403, 200, 403, 200, 403, 404],
   maintainer: [200, 403, 200, 403, 200, 403, 404],
 }
+/** For maintainers, not while a review is under way. */
+const renewsTheDraft: Matrix = {
+  'signed out': [401, 401, 401, 401, 401, 401, 401],
+  'signed out, visiting': [401, 401, 401, 401, 401, 401, 401],
+  outside: [404, 404, 404, 404, 404, 404, 404],
+  'outside, visiting': [404, 404, 403, 403, 403, 403, 404],
+  reader: [403, 403, 403, 403, 403, 403, 404],
+  contributor: [403, 403, 403, 403, 403, 403, 404],
+  maintainer: [200, 403, 200, 403, 200, 403, 404],
+}
 /** Only while a review is under way. Whether the contributor is the sender is for the service to say. */
 const takesBack: Matrix = {
   'signed out': [401, 401, 401, 401, 401, 401, 401],
@@ -151,6 +161,7 @@ export const pageRoutes: Record<string, PageExpectation> = {
   'PATCH /pages/:code': { matrix: keepsThePage, ifMatch: true },
   'DELETE /pages/:code': { matrix: removes, ifMatch: true },
   'GET /pages/:code/draft': { matrix: readsTheDraft },
+  'POST /pages/:code/draft/generations': { matrix: renewsTheDraft },
   'GET /pages/:code/revisions': { matrix: readsWhatIsPublic },
   'GET /pages/:code/revisions/:mark': { matrix: readsWhatIsPublic },
   'POST /pages/:code/revisions': { matrix: changesTheDraft },

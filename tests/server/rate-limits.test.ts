@@ -3,6 +3,7 @@ import { limits } from '#server/limits.ts'
 import { createTestApp, type TestApp, type TestAppOptions } from '#tests/support/app.ts'
 import { apiRoot, expectProblem, tab } from '#tests/support/http.ts'
 import { password } from '#tests/support/users.ts'
+import { makePolicyPages } from './policy-pages.ts'
 
 const session = `${apiRoot}/session`
 let t: TestApp
@@ -65,6 +66,27 @@ describe('sign-in attempts', () => {
       agent.put(`${apiRoot}/people/me/password`).send({ current: 'wrong', next: 'seven kettles drum at dusk' })
     for (let i = 0; i < limits.rate.signInByAccount; i++) expectProblem(await change(), 'wrong-password')
     expectProblem(await change(), 'too-many')
+  })
+})
+
+describe('pasted sources', () => {
+  test('are read sixty times an hour for one person; typing one into the form is not counted', async () => {
+    expect(limits.rate).toMatchObject({ imports: 60, importsWindow: 3_600_000 })
+    const ada = await start({ limits: (given) => ({ ...given, rate: { ...given.rate, imports: 2 } }) })
+    const group = await t.people.group('Kiln Lab', 'KLN', [[ada, 'contributor']])
+    const agent = await t.people.signedIn(ada)
+    await makePolicyPages(t.db, group, ada.id)
+    const add = (body: object) => agent.post(`${apiRoot}/pages/KLN-010/sources`).send(body)
+    // This app reads nothing (503), and each time it was asked to counts.
+    for (let i = 0; i < 2; i++) expectProblem(await add({ from: 'pasted', pasted: '@book{a}' }), 'not-ready')
+    const refused = await add({ from: 'pasted', pasted: '@book{a}' })
+    expectProblem(refused, 'too-many')
+    expect(Number(refused.headers['retry-after'])).toBeGreaterThan(3500)
+    expect((await add({ from: 'form', type: 'book', title: 'By hand', authors: [] })).status).toBe(201)
+    t.clock.ahead = limits.rate.importsWindow + 1000
+    const later = await t.people.signedIn(ada)
+    const again = await later.post(`${apiRoot}/pages/KLN-010/sources`).send({ from: 'pasted', pasted: '@book{a}' })
+    expectProblem(again, 'not-ready')
   })
 })
 
