@@ -24,6 +24,13 @@ const lists: { title: string; keys: [string, string][] }[] = [
     ],
   },
   {
+    title: 'In a review',
+    keys: [
+      ['n, p', 'to the next change, to the one before'],
+      ['m', 'write a remark'],
+    ],
+  },
+  {
     title: 'On the running point',
     keys: [
       ['Left, Right', 'one step; with Shift ten'],

@@ -1,3 +1,4 @@
+import { useEffect, useRef } from 'react'
 import { Navigate, Outlet, useLocation } from 'react-router-dom'
 import { useMe } from '#src/api/session.ts'
 
@@ -5,6 +6,17 @@ import { useMe } from '#src/api/session.ts'
 export function RequireSignIn() {
   const me = useMe()
   const { pathname, search } = useLocation()
+  // Whoever was signed in on this screen did not come without a session: it ended, and the sign-in page says so.
+  const signedIn = useRef(false)
+  useEffect(() => {
+    signedIn.current = me !== null
+  }, [me])
   if (me) return <Outlet />
-  return <Navigate to={`/sign-in?next=${encodeURIComponent(pathname + search)}`} replace />
+  return (
+    <Navigate
+      to={`/sign-in?next=${encodeURIComponent(pathname + search)}`}
+      state={{ ended: signedIn.current }}
+      replace
+    />
+  )
 }

@@ -5,8 +5,8 @@ const full = new Intl.DateTimeFormat('en-GB', { dateStyle: 'medium', timeStyle: 
 
 /** "9 Nov 2026" in the viewer's zone. */
 export const dayOf = (iso: string): string => day.format(new Date(iso))
-/** "9 Nov 2026" in UTC: for signatures. */
-export const utcDayOf = (iso: string): string => dayUtc.format(new Date(iso))
+/** "9 Nov 2026 UTC": for signatures, which say their zone. */
+export const utcDay = (iso: string): string => `${dayUtc.format(new Date(iso))} UTC`
 /** "09:41" in the viewer's zone. */
 export const clockOf = (iso: string): string => clock.format(new Date(iso))
 /** "1 Dec 2026, 13:07" in the viewer's zone. */

@@ -2,14 +2,13 @@ import { useQuery } from '@tanstack/react-query'
 import { PencilLine as Pencil } from 'lucide-react'
 import { useState } from 'react'
 import { Link, Navigate, useParams } from 'react-router-dom'
-import type { Page, RevisionHead } from '#shared/api/pages.ts'
+import type { OnsetKind, Page, RevisionHead } from '#shared/api/pages.ts'
 import { revisionQuery } from '#src/api/revisions.ts'
 import { useViewer } from '#src/api/session.ts'
 import { Button, ButtonLink } from '#src/components/button.tsx'
 import { OnsetGlyph } from '#src/components/onset-glyph.tsx'
 import { Waiting } from '#src/components/pencil-line.tsx'
 import { RevisionTriangle } from '#src/components/revision-triangle.tsx'
-import { StateSheet } from '#src/components/state-sheet.tsx'
 import { SourceList } from '#src/features/citations/source-list.tsx'
 import { parseDocument } from '#src/features/revisions/document-parts.ts'
 import { EquationLines } from '#src/features/revisions/equation-lines.tsx'
@@ -18,6 +17,8 @@ import { citedBy, ModelSheet } from '#src/features/revisions/model-sheet.tsx'
 import { WithdrawDialog } from '#src/features/revisions/revision-acts.tsx'
 import { StateBand } from '#src/features/revisions/state-band.tsx'
 import { StabilityCardView } from '#src/features/stability-card/stability-card-view.tsx'
+import { kindHue, kindTurns } from '#src/lib/kind-words.ts'
+import { NewerKind } from './compared-parts.tsx'
 import { PageAccess } from './page-access.tsx'
 import { PageGate, ReadFault } from './page-gate.tsx'
 import { RecordSection } from './record-section.tsx'
@@ -93,8 +94,8 @@ function DraftNotice({ page }: { page: Page }) {
       <p className="flex flex-wrap items-center gap-2.5">
         <RevisionTriangle mark={page.inReview.mark} />
         <span>
-          Revision {page.inReview.mark} is in review{kind && inForce && kind !== inForce ? ' and turns this ' : '. '}
-          {kind && inForce && kind !== inForce && <KindWord kind={kind} />}
+          Revision {page.inReview.mark} is in review
+          {kind && inForce && kind !== inForce ? <Turns before=" and " kind={kind} /> : '.'}
         </span>
         <Link className="link" to={`/reviews/${page.code}/${page.inReview.mark}`}>
           See what changes
@@ -108,7 +109,7 @@ function DraftNotice({ page }: { page: Page }) {
     <p className="flex flex-wrap items-center gap-2.5">
       <OnsetGlyph kind={kind} size={20} />
       <span>
-        The draft turns this <KindWord kind={kind} />
+        <Turns before="The draft " kind={kind} />
       </span>
       <Link className="link" to={`/m/${page.code}/edit`}>
         Open the draft
@@ -117,11 +118,14 @@ function DraftNotice({ page }: { page: Page }) {
   )
 }
 
-const hues = { hard: 'text-hard', soft: 'text-soft', undecided: 'text-open', none: 'text-ink' } as const
-const words = { hard: 'hard', soft: 'soft', undecided: 'undecided', none: 'without an onset' } as const
-
-function KindWord({ kind }: { kind: keyof typeof words }) {
-  return <b className={hues[kind]}>{words[kind]}. </b>
+function Turns({ before, kind }: { before: string; kind: OnsetKind }) {
+  const { verb, word } = kindTurns[kind]
+  return (
+    <>
+      {`${before}${verb} this `}
+      <b className={kindHue[kind]}>{word}</b>.
+    </>
+  )
 }
 
 function Shown({ page, mark, section }: { page: Page; mark: string; section: 'model' | 'behaviour' }) {
@@ -133,13 +137,7 @@ function Shown({ page, mark, section }: { page: Page; mark: string; section: 'mo
     return <ReadFault error={answer.error} what={`revision ${mark}`} onAgain={() => answer.refetch()} />
   const { revision } = answer.data
   const document = parseDocument(revision.document)
-  if (!document || !revision.stabilityCard) {
-    return (
-      <StateSheet urgent title="This revision is of a newer kind">
-        This page was loaded before the library was renewed. Load it again.
-      </StateSheet>
-    )
-  }
+  if (!document || !revision.stabilityCard) return <NewerKind />
   if (section === 'model') return <ModelSheet document={document} lines={revision.lines} sources={revision.sources} />
   return (
     <div className="grid grid-cols-1 gap-4 wide:grid-cols-[minmax(0,1fr)_368px]">

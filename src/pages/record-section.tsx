@@ -7,6 +7,7 @@ import { Waiting } from '#src/components/pencil-line.tsx'
 import { StateSheet } from '#src/components/state-sheet.tsx'
 import { RecordTable } from '#src/features/revisions/record-table.tsx'
 import { ReadFault } from './page-gate.tsx'
+import { RemovePage } from './remove-page.tsx'
 
 /** Every revision the viewer may read; two can be compared. */
 export function RecordSection({ page }: { page: Page }) {
@@ -17,7 +18,7 @@ export function RecordSection({ page }: { page: Page }) {
     return <ReadFault error={revisions.error} what={`record of ${page.code}`} onAgain={() => revisions.refetch()} />
   if (revisions.data.revisions.length === 0) {
     return (
-      <StateSheet title="No revision yet">
+      <StateSheet title="No revision yet" acts={page.may.includes('page:remove') && <RemovePage page={page} />}>
         A revision is made when a draft is sent for review. It stays here for good, with who wrote and who approved it.
       </StateSheet>
     )

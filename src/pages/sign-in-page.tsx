@@ -1,6 +1,7 @@
 import { useQuery } from '@tanstack/react-query'
 import { type FormEvent, useRef, useState } from 'react'
-import { Navigate, useSearchParams } from 'react-router-dom'
+import { Navigate, useLocation, useSearchParams } from 'react-router-dom'
+import { z } from 'zod'
 import type { SessionState } from '#shared/api/session.ts'
 import { ApiProblem } from '#src/api/api-problem.ts'
 import { sessionQuery, useMe, useSignIn } from '#src/api/session.ts'
@@ -10,6 +11,9 @@ import { LedgePage } from '#src/components/ledge-page.tsx'
 import { PasswordField } from '#src/components/password-field.tsx'
 import { announce } from '#src/lib/announce.ts'
 import { ownPath } from '#src/lib/own-path.ts'
+
+/** Handed on by the screen whose session ended. */
+const endedState = z.object({ ended: z.literal(true) })
 
 /** The one message for a wrong e-mail and a wrong password; what else went wrong is said as it is. */
 function signInFault(error: Error): string {
@@ -26,6 +30,7 @@ export function SignInPage() {
   const me = useMe()
   const demonstration = useQuery(sessionQuery).data?.demonstration ?? null
   const signIn = useSignIn()
+  const ended = endedState.safeParse(useLocation().state).success
   const [email, setEmail] = useState('')
   const [password, setPassword] = useState('')
   const form = useRef<HTMLFormElement>(null)
@@ -52,6 +57,14 @@ export function SignInPage() {
     <LedgePage beside={demonstration && <Demonstration demonstration={demonstration} onFill={fill} />}>
       <title>Sign in · Brinkbook</title>
       <h1 className="sr-only">Sign in</h1>
+      {ended && (
+        <div role="status" className="mb-4 grid gap-1">
+          <p className="text-subtitle">You were signed out</p>
+          <p className="text-note text-ink-2">
+            Remarks you were writing are kept in this tab, for you only. Sign in and go on.
+          </p>
+        </div>
+      )}
       <form ref={form} onSubmit={submit} noValidate className="grid gap-3">
         <Field
           label="E-mail"

@@ -9,7 +9,7 @@ import { largestFile, readModelText } from '#src/lib/model-file.ts'
 import { ownPath } from '#src/lib/own-path.ts'
 import { prefixesOf } from '#src/lib/prefixes.ts'
 import { symbolParts } from '#src/lib/symbol-parts.ts'
-import { utcDayOf } from '#src/lib/times.ts'
+import { utcDay } from '#src/lib/times.ts'
 
 describe('where to go after signing in', () => {
   test('a path of this library is kept with its query', () => {
@@ -101,7 +101,7 @@ describe('small words and figures', () => {
   })
 
   test('signatures carry the day in UTC', () => {
-    expect(utcDayOf('2026-11-09T23:59:59.000Z')).toBe('9 Nov 2026')
+    expect(utcDay('2026-11-09T23:59:59.000Z')).toBe('9 Nov 2026 UTC')
   })
 
   test('class names that do not hold are left out', () => {

@@ -1,5 +1,6 @@
 import type { Remark } from '#shared/api/revisions.ts'
-import { momentWithOffset, utcDayOf } from '#src/lib/times.ts'
+import { ModelSymbol } from '#src/components/symbol.tsx'
+import { dayOf, momentWithOffset } from '#src/lib/times.ts'
 
 /** Remarks of a returned revision, in order, each with what it speaks of. */
 export function RemarkList({ remarks }: { remarks: readonly Remark[] }) {
@@ -24,9 +25,16 @@ export function RemarkList({ remarks }: { remarks: readonly Remark[] }) {
             <div>
               <p className="text-note">
                 <b>{remark.author.name}</b>{' '}
-                <span className="text-ink-2" title={momentWithOffset(remark.at)}>
-                  {remark.line ? `on line ${remark.line}, ` : remark.symbol ? `on ${remark.symbol}, ` : ''}
-                  {utcDayOf(remark.at)}
+                <span className="text-ink-2">
+                  {remark.line !== null && `on line ${remark.line}, `}
+                  {remark.symbol !== null && (
+                    <>
+                      on <ModelSymbol name={remark.symbol} />,{' '}
+                    </>
+                  )}
+                  <time dateTime={remark.at} title={momentWithOffset(remark.at)}>
+                    {dayOf(remark.at)}
+                  </time>
                 </span>
               </p>
               <p className="whitespace-pre-wrap">{remark.text}</p>

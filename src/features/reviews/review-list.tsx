@@ -2,19 +2,8 @@ import { Link } from 'react-router-dom'
 import type { ReviewRow } from '#shared/api/reviews.ts'
 import { OnsetWord } from '#src/components/onset-glyph.tsx'
 import { StateWord } from '#src/components/signature-strip.tsx'
-import { momentWithOffset, utcDayOf } from '#src/lib/times.ts'
-
-const kindWords = { hard: 'hard', soft: 'soft', undecided: 'undecided', none: 'no onset' } as const
-
-/** The consequence of a row in words: what approving would change. */
-export function consequenceOf(row: ReviewRow): string {
-  const now = row.revision.card?.kind ?? null
-  if (now === null) return 'No verdict'
-  if (row.wasKind === null) return 'First revision of the page'
-  return row.wasKind === now
-    ? 'Leaves the verdict as it is'
-    : `Turns the verdict from ${kindWords[row.wasKind]} to ${kindWords[now]}`
-}
+import { dayOf, momentWithOffset } from '#src/lib/times.ts'
+import { consequenceOf } from './consequence.ts'
 
 /** Revisions under review or settled, one a row; the row's link opens the review. */
 export function ReviewList({ title, rows, empty }: { title: string; rows: readonly ReviewRow[]; empty: string }) {
@@ -38,13 +27,15 @@ export function ReviewList({ title, rows, empty }: { title: string; rows: readon
               <p className="text-note text-ink-2">
                 <span className="figures">{row.code}</span> {row.group.name}, revision{' '}
                 <span className="figures">{row.revision.mark}</span>, sent by {row.revision.sentBy.name},{' '}
-                <span title={momentWithOffset(row.revision.sentAt)}>{utcDayOf(row.revision.sentAt)}</span>
+                <time dateTime={row.revision.sentAt} title={momentWithOffset(row.revision.sentAt)}>
+                  {dayOf(row.revision.sentAt)}
+                </time>
               </p>
               <p className="text-note">{row.revision.summary}</p>
             </div>
             <div>
               {row.revision.card && <OnsetWord kind={row.revision.card.kind} size={18} />}
-              <p className="text-note font-[560]">{consequenceOf(row)}</p>
+              {row.revision.state === 'in-review' && <p className="text-note font-[560]">{consequenceOf(row)}</p>}
             </div>
             <StateWord state={row.revision.state} />
           </li>

@@ -4,9 +4,9 @@ import { SectionBar } from '#src/components/section-bar.tsx'
 import { SignatureStrip, StateWord } from '#src/components/signature-strip.tsx'
 import { TitleBlock, type TitleCell } from '#src/components/title-block.tsx'
 import { shortName } from '#src/lib/initials.ts'
-import { momentWithOffset, utcDayOf } from '#src/lib/times.ts'
+import { momentWithOffset, utcDay } from '#src/lib/times.ts'
 
-const names = (revision: RevisionHead, meaning: 'written' | 'approved') =>
+const names = (revision: RevisionHead, meaning: 'written' | 'checked') =>
   revision.signatures
     .filter((signature) => signature.meaning === meaning)
     .map((signature) => shortName(signature.person.name))
@@ -31,6 +31,9 @@ export function ModelHead({ page, revision, title, note, current, editing = fals
   const written = revision
     ? names(revision, 'written')
     : (page.draft?.writers ?? []).map((person) => shortName(person.name))
+  const checked = revision ? names(revision, 'checked') : []
+  // A revision that is in force says so itself; the last cell would only say it again.
+  const itselfInForce = revision !== null && revision.mark === page.inForce?.mark
   const cells: TitleCell[] = [
     { label: 'Page', value: <span className="figures font-[640]">{page.code}</span>, drops: 'first' },
     revision
@@ -42,17 +45,24 @@ export function ModelHead({ page, revision, title, note, current, editing = fals
       drops: 'first',
     },
     {
+      label: 'Checked',
+      value: checked.length === 0 ? <span className="text-ink-3">not yet</span> : shortList(checked),
+      drops: 'first',
+    },
+    {
       label: 'Approved',
       value: approved ? (
         <span title={momentWithOffset(approved.at)}>
-          {shortName(approved.person.name)}, {utcDayOf(approved.at)}
+          {shortName(approved.person.name)}, {utcDay(approved.at)}
         </span>
       ) : (
         <span className="text-ink-3">not yet</span>
       ),
       drops: 'second',
     },
-    {
+  ]
+  if (!itselfInForce) {
+    cells.push({
       label: 'In force',
       value: page.inForce ? (
         <span className="inline-flex items-center gap-2">
@@ -62,8 +72,8 @@ export function ModelHead({ page, revision, title, note, current, editing = fals
       ) : (
         <span className="text-ink-3">nothing</span>
       ),
-    },
-  ]
+    })
+  }
   const base = `/m/${page.code}`
   const sections = [
     { to: editing ? `${base}/edit` : `${base}/model`, label: 'Model', current: current.includes('model') },

@@ -3,6 +3,7 @@ import type { FormattedSource } from '#shared/api/sources.ts'
 import type { ModelDocument } from '#shared/model/document.ts'
 import { ModelSymbol } from '#src/components/symbol.tsx'
 import { Cell, Row, Table, TableHead } from '#src/components/table.tsx'
+import { exactFigure } from '#src/lib/figures.ts'
 import { EquationLines } from './equation-lines.tsx'
 
 /** Which sources a line or a parameter cites, as numbers in the page's list of sources. */
@@ -18,8 +19,6 @@ export function citedBy(sources: readonly FormattedSource[]) {
   })
   return { lines, symbols }
 }
-
-const figure = (value: number | undefined) => (value === undefined ? '' : String(value).replace('-', '\u2212'))
 
 /** Equations typeset, parameters and states as tables: a frozen model to read. */
 export function ModelSheet({
@@ -84,10 +83,10 @@ export function ModelSheet({
                       <span className="block text-label text-ink-2">control parameter</span>
                     )}
                   </Cell>
-                  <Cell className="figures text-right text-note">{figure(row.value)}</Cell>
+                  <Cell className="figures text-right text-note">{exactFigure(row.value)}</Cell>
                   <Cell className="text-note">{row.unit}</Cell>
                   <Cell className="figures text-note whitespace-nowrap">
-                    {row.low === undefined ? '' : `${figure(row.low)} to ${figure(row.high)}`}
+                    {row.low === undefined ? '' : `${exactFigure(row.low)} to ${exactFigure(row.high)}`}
                   </Cell>
                   <Cell className="text-note">
                     {(cited.symbols.get(row.symbol) ?? []).map((source) => (
@@ -119,9 +118,11 @@ export function ModelSheet({
                     <ModelSymbol name={row.symbol} />
                   </Cell>
                   <Cell>{row.meaning}</Cell>
-                  <Cell className="figures text-note">{figure(row.low)}</Cell>
-                  <Cell className="figures text-note">{figure(row.high)}</Cell>
-                  <Cell className="figures text-note">{row.start === undefined ? 'middle' : figure(row.start)}</Cell>
+                  <Cell className="figures text-note">{exactFigure(row.low)}</Cell>
+                  <Cell className="figures text-note">{exactFigure(row.high)}</Cell>
+                  <Cell className="figures text-note">
+                    {row.start === undefined ? 'middle' : exactFigure(row.start)}
+                  </Cell>
                   <Cell className="text-note">{row.unit}</Cell>
                 </Row>
               ))}

@@ -1,19 +1,21 @@
 import { useRef, useState } from 'react'
 import type { RevisionHead } from '#shared/api/pages.ts'
+import { actWords } from '#src/api/act-words.ts'
 import { ApiProblem } from '#src/api/api-problem.ts'
 import { useSendForReview, useTakeBack, useWithdrawRevision } from '#src/api/revisions.ts'
+import { ActFault } from '#src/components/act-fault.tsx'
 import { Button } from '#src/components/button.tsx'
 import { Dialog } from '#src/components/dialog.tsx'
-import { FaultText, Field, TextField } from '#src/components/field.tsx'
+import { Field, TextField } from '#src/components/field.tsx'
 import { newIdempotencyKey } from '#src/lib/idempotency-key.ts'
 
-/** What went wrong, with the faults of the model where it was refused. */
-export function Refusal({ error }: { error: Error | null }) {
+/** What went wrong, and what still holds; with the faults of the model where it was refused. */
+export function Refusal({ error, notDone }: { error: Error | null; notDone: string }) {
   if (!error) return null
   const faults = error instanceof ApiProblem ? error.errors : []
+  const { headline, text } = actWords(error, notDone)
   return (
-    <div role="alert" className="grid gap-1.5">
-      <FaultText>{error.message}</FaultText>
+    <ActFault headline={headline} text={text}>
       {faults.length > 0 && (
         <ul className="grid gap-1 pl-6 text-note">
           {faults.slice(0, 12).map((fault) => (
@@ -24,7 +26,7 @@ export function Refusal({ error }: { error: Error | null }) {
           ))}
         </ul>
       )}
-    </div>
+    </ActFault>
   )
 }
 
@@ -77,7 +79,7 @@ export function SendDialog({ code, generation, open, onClose, onSent }: SendDial
           required
           onChange={(event) => setSummary(event.target.value)}
         />
-        <Refusal error={send.error} />
+        <Refusal error={send.error} notDone="Nothing is sent." />
         <div className="flex flex-wrap gap-2">
           <Button
             type="submit"
@@ -104,7 +106,7 @@ export function TakeBackButton({ code, revision }: { code: string; revision: Rev
       <Button pending={takeBack.isPending} onClick={() => takeBack.mutate({ etag: revision.etag })}>
         Take back
       </Button>
-      <Refusal error={takeBack.error} />
+      <Refusal error={takeBack.error} notDone="It is not taken back." />
     </div>
   )
 }
@@ -156,7 +158,7 @@ export function WithdrawDialog({
           value={password}
           onChange={(event) => setPassword(event.target.value)}
         />
-        <Refusal error={withdraw.error} />
+        <Refusal error={withdraw.error} notDone="Nothing is withdrawn." />
         <div className="flex flex-wrap gap-2">
           <Button
             type="submit"

@@ -1,26 +1,19 @@
+import type { ReactNode } from 'react'
 import type { RevisionHead } from '#shared/api/pages.ts'
 import { StateWord } from '#src/components/signature-strip.tsx'
-import { utcDayOf } from '#src/lib/times.ts'
+import { dayOf, momentWithOffset } from '#src/lib/times.ts'
 
-/** Across the top of a revision that is not in force: what it is, and what holds instead. */
-export function StateBand({
-  revision,
-  inForce,
-  code,
-}: {
+export interface StateBandProps {
   revision: RevisionHead
+  /** Mark of what is in force now. */
   inForce: string | null
   code: string
-}) {
+}
+
+/** Across the top of a revision that is not in force: what it is, and what holds instead. */
+export function StateBand({ revision, inForce, code }: StateBandProps) {
   if (revision.state === 'in-force') return null
-  const instead =
-    inForce && inForce !== revision.mark ? ` Revision ${inForce} is in force.` : ' Nothing is in force on this page.'
-  const words = {
-    superseded: `Superseded${revision.settledAt ? ` on ${utcDayOf(revision.settledAt)}` : ''}.${instead}`,
-    withdrawn: `Withdrawn${revision.settledAt ? ` on ${utcDayOf(revision.settledAt)}` : ''}${revision.reason ? `: ${revision.reason}` : ''}.${inForce ? instead : ' Nothing is in force on this page.'}`,
-    'in-review': `In review since ${utcDayOf(revision.sentAt)}; not to be relied on.${inForce ? instead : ''}`,
-    returned: `Returned; not to be relied on.${inForce ? instead : ''}`,
-  }[revision.state]
+  const other = inForce === revision.mark ? null : inForce
   return (
     <div
       role="note"
@@ -29,12 +22,47 @@ export function StateBand({
       <b>
         <StateWord state={revision.state} />
       </b>
-      <span>{words}</span>
-      {inForce && inForce !== revision.mark && (
+      <span>
+        {whatItIs(revision)} {other ? `Revision ${other} is in force.` : 'Nothing is in force on this page.'}
+      </span>
+      {other && (
         <a className="link" href={`/m/${code}`}>
-          Open {inForce}
+          Open {other}
         </a>
       )}
     </div>
+  )
+}
+
+function whatItIs({ state, sentAt, settledAt, reason }: RevisionHead): ReactNode {
+  const settled = settledAt && <Day at={settledAt} before="on " />
+  switch (state) {
+    case 'superseded':
+      return <>Superseded {settled}.</>
+    case 'withdrawn':
+      return (
+        <>
+          Withdrawn {settled}
+          {reason ? `: ${reason}${/[.!?]$/.test(reason) ? '' : '.'}` : '.'}
+        </>
+      )
+    case 'in-review':
+      return (
+        <>
+          In review since <Day at={sentAt} />; not to be relied on.
+        </>
+      )
+    default:
+      return <>Returned {settled}; not to be relied on.</>
+  }
+}
+
+/** A day in the viewer's zone; the moment with its offset in the title. */
+function Day({ at, before = '' }: { at: string; before?: string }) {
+  return (
+    <time dateTime={at} title={momentWithOffset(at)}>
+      {before}
+      {dayOf(at)}
+    </time>
   )
 }
