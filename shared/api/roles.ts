@@ -84,6 +84,8 @@ export const pageActs = {
   'page:remove': during(['draft'], maintainers),
   'draft:read': during(standing, members),
   'draft:write': during(unlocked, writers),
+  /** Begins a new generation with the same content. */
+  'draft:renew': during(unlocked, maintainers),
   /** Presence on the socket: carets and names. Readers are seen, they write nothing. */
   'draft:presence': during(standing, members),
   'revision:list': { ...during(standing, members), ...during(published, readers) },

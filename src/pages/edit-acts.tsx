@@ -1,7 +1,9 @@
 import { useState } from 'react'
 import { useNavigate } from 'react-router-dom'
 import type { Page } from '#shared/api/pages.ts'
+import { useRenewDraft } from '#src/api/drafts.ts'
 import { Button, ButtonLink } from '#src/components/button.tsx'
+import { FaultText } from '#src/components/field.tsx'
 import type { DraftConnection, DraftConnectionState } from '#src/features/editor/draft-connection.ts'
 import { useConnectionState } from '#src/features/editor/use-draft-connection.ts'
 import { SendDialog } from '#src/features/revisions/revision-acts.tsx'
@@ -57,6 +59,22 @@ export function EditActs({ page, connection, live }: { page: Page; connection: D
           navigate(`/m/${page.code}/rev/${revision.mark}`)
         }}
       />
+    </>
+  )
+}
+
+/** A maintainer's way out of a draft that takes nothing more: everybody in it loads the new one. */
+export function RenewDraft({ code, generation }: { code: string; generation: number }) {
+  const renew = useRenewDraft(code)
+  return (
+    <>
+      <Button
+        pending={renew.isPending}
+        onClick={() => renew.mutate(generation, { onSuccess: () => announce('Draft begun anew') })}
+      >
+        Begin the draft anew
+      </Button>
+      {renew.error && <FaultText>{renew.error.message}</FaultText>}
     </>
   )
 }

@@ -16,7 +16,7 @@ import { ModelHead } from '#src/features/revisions/model-head.tsx'
 import { useLiveCard } from '#src/workers/use-live-card.ts'
 import { DraftCardColumn } from './draft-card-column.tsx'
 import { DraftModelColumn } from './draft-model-column.tsx'
-import { EditActs } from './edit-acts.tsx'
+import { EditActs, RenewDraft } from './edit-acts.tsx'
 import { PageGate } from './page-gate.tsx'
 import { useCommandKey } from './use-command-key.ts'
 import { useInForce } from './use-in-force.ts'
@@ -53,6 +53,10 @@ function Editing({ page, connection, onReload }: { page: Page; connection: Draft
   const viewer = useViewer()
   const readOnly = !isOpenToEdits(state)
   useCommandKey('again', again)
+  const renew =
+    page.may.includes('draft:renew') && state.generation !== null ? (
+      <RenewDraft code={page.code} generation={state.generation} />
+    ) : null
   useFreshHead(page, state.room, state.generation)
   const earlier = useInForce(page)
   const title = content.settings.title || page.title
@@ -75,7 +79,7 @@ function Editing({ page, connection, onReload }: { page: Page; connection: Draft
         }
       />
       <LeaveGuard connection={connection} />
-      <DraftBand connection={connection} onReload={onReload} renew={null} />
+      <DraftBand connection={connection} onReload={onReload} renew={renew} />
       <KeptLines person={viewer} page={page.id} />
       {!state.synced && state.phase !== 'refused' && <PencilLine label="Opening the draft" />}
       <div className="grid grid-cols-1 items-start gap-4 bench:grid-cols-[minmax(0,432px)_minmax(0,1fr)] wide:grid-cols-[480px_minmax(0,1fr)]">

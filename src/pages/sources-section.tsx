@@ -1,7 +1,7 @@
 import { useQuery } from '@tanstack/react-query'
 import { useState } from 'react'
+import type { DraftTargets } from '#shared/api/drafts.ts'
 import type { Page, RevisionHead } from '#shared/api/pages.ts'
-import { modelDocument } from '#shared/model/document.ts'
 import { draftQuery } from '#src/api/drafts.ts'
 import { revisionQuery } from '#src/api/revisions.ts'
 import { useViewer } from '#src/api/session.ts'
@@ -9,7 +9,7 @@ import { sourcesQuery, useRemoveSource, useUnlinkSource } from '#src/api/sources
 import { FaultText } from '#src/components/field.tsx'
 import { Waiting } from '#src/components/pencil-line.tsx'
 import { AddSource } from '#src/features/citations/add-source.tsx'
-import { LinkSource, type LinkTargets } from '#src/features/citations/link-source.tsx'
+import { LinkSource } from '#src/features/citations/link-source.tsx'
 import { SourceList } from '#src/features/citations/source-list.tsx'
 import { announce } from '#src/lib/announce.ts'
 import { ReadFault } from './page-gate.tsx'
@@ -35,7 +35,7 @@ function FrozenSources({ page, mark }: { page: Page; mark: string }) {
   )
 }
 
-const symbolsOnly = modelDocument.pick({ equations: true, parameters: true })
+const noTargets: DraftTargets = { symbols: [], lines: [] }
 
 function DraftSources({ page }: { page: Page }) {
   const viewer = useViewer()
@@ -48,7 +48,7 @@ function DraftSources({ page }: { page: Page }) {
   if (sources.isError)
     return <ReadFault error={sources.error} what={`sources of ${page.code}`} onAgain={() => sources.refetch()} />
   const mayWrite = page.may.includes('source:write')
-  const targets = targetsOf(draft.data?.document)
+  const targets = draft.data?.targets ?? noTargets
   const fault = remove.error ?? unlink.error
   return (
     <div className="grid grid-cols-1 items-start gap-4 bench:grid-cols-[minmax(0,1fr)_26rem]">
@@ -61,13 +61,18 @@ function DraftSources({ page }: { page: Page }) {
             A review is under way: sources can be changed again when it is settled.
           </p>
         )}
+        {draft.error && <FaultText>Symbols and lines could not be read: {draft.error.message}</FaultText>}
         {fault && <FaultText>{fault.message}</FaultText>}
         <SourceList
           sources={sources.data.sources}
           onRemove={mayWrite ? (source) => remove.mutate(source.id) : undefined}
           onUnlink={mayWrite ? (link) => unlink.mutate(link.id) : undefined}
           renderActs={
-            mayWrite ? (source) => <LinkSource code={page.code} source={source} targets={targets} /> : undefined
+            mayWrite
+              ? (source) => (
+                  <LinkSource code={page.code} source={source} targets={targets} onOpen={() => draft.refetch()} />
+                )
+              : undefined
           }
         />
       </section>
@@ -89,21 +94,3 @@ function DraftSources({ page }: { page: Page }) {
     </div>
   )
 }
-
-/** What a source may stand behind: the draft's parameters and its lines that hold a statement. */
-function targetsOf(document: unknown): LinkTargets {
-  const parsed = symbolsOnly.safeParse(typeof document === 'object' && document !== null ? pick(document) : null)
-  if (!parsed.success) return { symbols: [], lines: [] }
-  return {
-    symbols: parsed.data.parameters.map((row) => ({ symbol: row.symbol, meaning: row.meaning ?? '' })),
-    lines: parsed.data.equations
-      .split(/\r?\n/)
-      .map((text, index) => ({ line: index + 1, text: text.trim() }))
-      .filter(({ text }) => text !== '' && !text.startsWith('#')),
-  }
-}
-
-const pick = (document: object) => ({
-  equations: 'equations' in document ? document.equations : undefined,
-  parameters: 'parameters' in document ? document.parameters : undefined,
-})

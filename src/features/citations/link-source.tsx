@@ -1,4 +1,5 @@
 import { useRef, useState } from 'react'
+import type { DraftTargets } from '#shared/api/drafts.ts'
 import type { FormattedSource, SourceTarget } from '#shared/api/sources.ts'
 import { linkLabels } from '#shared/model/locators.ts'
 import { useLinkSource } from '#src/api/sources.ts'
@@ -7,19 +8,40 @@ import { FaultText, Field } from '#src/components/field.tsx'
 import { Select } from '#src/components/select.tsx'
 import { newIdempotencyKey } from '#src/lib/idempotency-key.ts'
 
-export interface LinkTargets {
-  symbols: readonly { symbol: string; meaning: string }[]
-  /** Lines of the draft's equation block; `anchor` follows the line when others edit above it. */
-  lines: readonly { line: number; text: string; anchor?: string }[]
-}
-
 const labels = [
   { value: '', label: 'no locator' },
   ...linkLabels.map((value) => ({ value: value as string, label: value as string })),
 ]
 
-/** Attaches a source to a parameter or an equation line, with where in the source it stands and what it says there. */
-export function LinkSource({ code, source, targets }: { code: string; source: FormattedSource; targets: LinkTargets }) {
+/** What a source may stand behind, as the select names it: a symbol, or a line by the anchor that follows it. */
+export function targetOptions({
+  symbols,
+  lines,
+}: DraftTargets): { value: string; label: string; target: SourceTarget }[] {
+  return [
+    ...symbols.map(({ symbol, meaning }) => ({
+      value: `symbol ${symbol}`,
+      label: meaning ? `${symbol}, ${meaning}` : symbol,
+      target: { kind: 'parameter' as const, symbol },
+    })),
+    ...lines.map(({ line, text, anchor }) => ({
+      value: `line ${anchor}`,
+      label: `line ${line}: ${text.slice(0, 60)}`,
+      target: { kind: 'line' as const, line, anchor },
+    })),
+  ]
+}
+
+export interface LinkSourceProps {
+  code: string
+  source: FormattedSource
+  targets: DraftTargets
+  /** The form was opened: the draft may have changed since it was read. */
+  onOpen: () => void
+}
+
+/** Attaches a source to a symbol or an equation line, with where in the source it stands and what it says there. */
+export function LinkSource({ code, source, targets, onOpen }: LinkSourceProps) {
   const [open, setOpen] = useState(false)
   const [target, setTarget] = useState('')
   const [label, setLabel] = useState('')
@@ -27,36 +49,28 @@ export function LinkSource({ code, source, targets }: { code: string; source: Fo
   const [quoted, setQuoted] = useState('')
   const key = useRef(newIdempotencyKey())
   const link = useLinkSource(code)
-  if (!open) return <LinkButton onClick={() => setOpen(true)}>Attach to a parameter or line</LinkButton>
-  const options = [
-    { value: '', label: 'Choose' },
-    ...targets.symbols.map(({ symbol, meaning }) => ({
-      value: `parameter ${symbol}`,
-      label: meaning ? `${symbol}, ${meaning}` : symbol,
-    })),
-    ...targets.lines.map(({ line, text }) => ({ value: `line ${line}`, label: `line ${line}: ${text.slice(0, 60)}` })),
-  ]
-  const chosen = (): SourceTarget | null => {
-    if (target.startsWith('parameter ')) return { kind: 'parameter', symbol: target.slice('parameter '.length) }
-    if (!target.startsWith('line ')) return null
-    const line = Number(target.slice('line '.length))
-    const anchor = targets.lines.find((candidate) => candidate.line === line)?.anchor
-    return { kind: 'line', line, ...(anchor ? { anchor } : {}) }
+  if (!open) {
+    const show = () => {
+      onOpen()
+      setOpen(true)
+    }
+    return <LinkButton onClick={show}>Attach to a symbol or line</LinkButton>
   }
+  const options = targetOptions(targets)
+  const chosen = options.find(({ value }) => value === target)?.target ?? null
   return (
     <form
       className="mt-2 grid gap-3 bg-well p-3"
       onSubmit={(event) => {
         event.preventDefault()
-        const to = chosen()
-        if (!to) return
+        if (!chosen) return
         const found = linkLabels.find((candidate) => candidate === label)
         link.mutate(
           {
             source: source.id,
             key: key.current,
             body: {
-              target: to,
+              target: chosen,
               ...(found ? { label: found } : {}),
               ...(locator.trim() ? { locator } : {}),
               ...(quoted.trim() ? { quoted } : {}),
@@ -73,7 +87,7 @@ export function LinkSource({ code, source, targets }: { code: string; source: Fo
     >
       <Select
         label="Stands behind"
-        options={options}
+        options={[{ value: '', label: 'Choose' }, ...options]}
         value={target}
         onChange={(event) => setTarget(event.target.value)}
       />
@@ -98,7 +112,7 @@ export function LinkSource({ code, source, targets }: { code: string; source: Fo
           type="submit"
           look="first"
           pending={link.isPending}
-          unavailable={chosen() === null && 'Choose what it stands behind.'}
+          unavailable={chosen === null && 'Choose what it stands behind.'}
         >
           Attach
         </Button>

@@ -6,12 +6,16 @@ import { tableOrigin } from './draft-tables.ts'
 
 /**
  * One history of this tab's own edits, of the equation block and of the tables alike: steps are undone in the order they
- * were made. What others wrote is never undone, and never written over: where they changed a cell since, it stays theirs.
+ * were made. What others wrote is never undone, and never written over: where they changed a cell since, it stays theirs,
+ * and a row somebody added stays once another person has written in it.
  */
 export function createDraftHistory(doc: Y.Doc): Y.UndoManager {
   const roots = [equationsOf(doc), parametersOf(doc), statesOf(doc), settingsOf(doc)]
   // The editor adds its own origin to these; what comes from the server has the connection's.
-  const history = new Y.UndoManager(roots, { trackedOrigins: new Set([tableOrigin]) })
+  const history = new Y.UndoManager(roots, {
+    trackedOrigins: new Set([tableOrigin]),
+    deleteFilter: (item) => !holdsRowOfOthers(item, doc.clientID),
+  })
   let last: unknown = null
   doc.on('beforeTransaction', ({ origin }: Y.Transaction) => {
     if (!history.trackedOrigins.has(origin) || origin === last) return
@@ -20,6 +24,14 @@ export function createDraftHistory(doc: Y.Doc): Y.UndoManager {
     last = origin
   })
   return history
+}
+
+/** A row that others wrote in, or a cell as that row was made with: taken away, what they wrote would go with it. */
+function holdsRowOfOthers(item: Y.Item, own: number): boolean {
+  const first = item.parentSub !== null && item.left === null
+  const row = item.content instanceof Y.ContentType ? item.content.type : first ? item.parent : null
+  if (!(row instanceof Y.Map) || row.parent === null) return false
+  return [...row._map.values()].some((cell) => !cell.deleted && cell.id.client !== own)
 }
 
 export function useDraftHistory(doc: Y.Doc): Y.UndoManager {

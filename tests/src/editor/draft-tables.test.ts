@@ -46,14 +46,26 @@ describe('co-edited tables', () => {
     expect(parameterRows(doc)).toEqual([])
   })
 
-  test('"Set as the page\'s value" writes the control parameter, in six digits', () => {
+  test('"Set as the page\'s value" writes the control parameter digit by digit', () => {
     const doc = new Y.Doc()
     addParameter(doc, { symbol: 'k', value: '1' })
     addParameter(doc, { symbol: 'U', value: '6' })
     expect(setControlValue(doc, 7)).toBe(false)
     setSetting(doc, 'control', 'U')
     expect(setControlValue(doc, 7.10831457)).toBe(true)
-    expect(parameterRows(doc).map((row) => row.value)).toEqual(['1', '7.10831'])
+    expect(parameterRows(doc).map((row) => row.value)).toEqual(['1', '7.10831457'])
+    // On a range from 1000 to 1001 the point moves in steps of 0.005.
+    setControlValue(doc, 1000.015)
+    expect(parameterRows(doc)[1]?.value).toBe('1000.015')
+    expect(setControlValue(doc, Number.NaN)).toBe(false)
+  })
+
+  test('it finds the control parameter in either spelling of its symbol', () => {
+    const doc = new Y.Doc()
+    addParameter(doc, { symbol: 'μ', value: '1' })
+    setSetting(doc, 'control', 'mu')
+    expect(setControlValue(doc, 2)).toBe(true)
+    expect(parameterRows(doc)[0]?.value).toBe('2')
   })
 
   test('what is read is a new object only after a change', () => {

@@ -1,5 +1,5 @@
 import { describe, expect, test } from 'vitest'
-import { changedSymbols, faultsByPath, messagesOf } from '#src/pages/draft-notes.ts'
+import { changedSymbols, faultsByPath, messagesOf, progressWords } from '#src/pages/draft-notes.ts'
 import type { CardState } from '#src/workers/card-runner.ts'
 
 const idle: CardState = {
@@ -49,6 +49,11 @@ describe('where the faults of a draft are shown', () => {
   test('at the cell they speak of', () => {
     expect([...faultsByPath(checked.errors)]).toEqual([['parameters[0].value', '"1e" is not a number.']])
   })
+
+  test('two at one place one after the other', () => {
+    const at = (message: string) => ({ code: 'bad-range' as const, message, path: 'states[0].low' })
+    expect(faultsByPath([at('First.'), at('Second.')]).get('states[0].low')).toBe('First. Second.')
+  })
 })
 
 test('parameters that differ from the revision in force are marked, however their numbers are typed', () => {
@@ -75,6 +80,14 @@ test('parameters that differ from the revision in force are marked, however thei
     warnings: [],
   }
   const row = (symbol: string, value: string, low = '', high = '', unit = '') => ({ symbol, value, low, high, unit })
+  const meant = changedSymbols(
+    [
+      { ...row('a', '-0.5', '-1', '1'), meaning: 'damping' },
+      { ...row('b', '2'), uncertainty: 'normal 0.1' },
+    ],
+    { document, card, label: 'revision 1.0.0', mark: '1.0.0' },
+  )
+  expect([...(meant?.symbols ?? [])]).toEqual(['a', 'b'])
   const changed = changedSymbols([row('a', '−0,5', '-1', '1.0'), row('b', '2.5'), row('c', '1')], {
     document,
     card,
@@ -84,4 +97,9 @@ test('parameters that differ from the revision in force are marked, however thei
   expect([...(changed?.symbols ?? [])]).toEqual(['b', 'c'])
   expect(changed?.mark).toBe('1.0.0')
   expect(changedSymbols([row('a', '1')], null)).toBeNull()
+})
+
+test('a run says what it does and how far it is', () => {
+  expect(progressWords({ stage: 'branches', share: 0.404 })).toBe('Following the branches, 40 %')
+  expect(progressWords({ stage: 'steady-states', share: 1.2 })).toBe('Finding the steady states, 100 %')
 })

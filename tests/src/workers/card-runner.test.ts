@@ -142,6 +142,48 @@ describe('one run at a time', () => {
   })
 })
 
+describe('what the user asks for', () => {
+  test('the newest text is run again', () => {
+    const { runner, port } = setUp()
+    runner.again()
+    expect(port(0).asked).toEqual([])
+    runner.analyse(lag(1), 5)
+    port(0).answer()
+    runner.again(9)
+    expect(runner.getState()).toMatchObject({ computing: true })
+    port(0).answer()
+    expect(runner.getState().card?.editedAt).toBe(9)
+  })
+
+  test('a run is stopped: its worker ends, the card of before stays and is said to be older, and it can be run again', () => {
+    const { runner, port } = setUp()
+    runner.analyse(lag(1))
+    port(0).answer()
+    runner.analyse(lag(2))
+    runner.analyse(lag(3))
+    runner.stop()
+    expect(port(0).ended).toBe(true)
+    expect(runner.getState()).toMatchObject({ computing: false, older: true, progress: null })
+    expect(runner.getState().failure).toMatch(/^Stopped before its end/)
+    vi.advanceTimersByTime(60_000)
+    expect(port(1).asked).toEqual([])
+    runner.again()
+    port(1).answer()
+    expect(runner.getState()).toMatchObject({ older: false, failure: null })
+    // x' = 3 (p - x): the newest text, not the one that was running.
+    expect(runner.getState().card?.card.steadyStates?.[0]?.eigenvalues[0]?.re).toBe(-3)
+  })
+
+  test('where nothing runs there is nothing to stop', () => {
+    const { runner, port } = setUp()
+    runner.analyse(lag(1))
+    port(0).answer()
+    runner.stop()
+    expect(port(0).ended).toBe(false)
+    expect(runner.getState().failure).toBeNull()
+  })
+})
+
 describe('a run that takes too long', () => {
   test('is given up for a newer text once its time is over: its worker ends, the warm spare takes over', () => {
     const { runner, ports, port } = setUp({ patience: 400 })
