@@ -46,33 +46,35 @@ export function listCycles(
   return out
 }
 
+/** Share of the range by which a branch must come and go for a turn to be one. */
+const visible = 1e-7
+
 /**
- * The turning points of a branch. Where it stands vertical to rounding (a canard), the sign of the tangent's control
- * component changes at random: such a group within 1e-8 of the range is one turning point, or none if it goes on in the
- * same direction. Turns of cycles as small as the first one belong to the onset.
+ * The turning points of a branch. Where it stands vertical to rounding (a canard, a centre), the sign of the tangent's
+ * control component changes at random: a group of turns at one control value counts once, and only where the branch comes
+ * from and goes to the same side. Turns of cycles as small as the first one belong to the onset.
  */
 export function turningPoints(frame: Frame, points: readonly WalkedPoint[]): WalkedPoint[] {
-  const folds = points.filter(({ at, mark }) => mark === 'fold' && !isPoint(at, frame.n))
   const out: WalkedPoint[] = []
-  for (let i = 0; i < folds.length; ) {
-    let j = i + 1
-    const here = (folds[i] as WalkedPoint).at.solution.cycle.p
-    while (j < folds.length && Math.abs((folds[j] as WalkedPoint).at.solution.cycle.p - here) < 1e-8) j++
-    if ((j - i) % 2 === 1) out.push(outermost(points, folds.slice(i, j)))
-    i = j
+  const controlAt = (i: number): number => (points[i] as WalkedPoint).at.solution.cycle.p
+  for (let i = 0; i < points.length; i++) {
+    const { at, mark } = points[i] as WalkedPoint
+    if (mark !== 'fold' || isPoint(at, frame.n)) continue
+    const here = controlAt(i)
+    let before = i - 1
+    while (before >= 0 && Math.abs(controlAt(before) - here) < visible) before--
+    let after = i + 1
+    while (after < points.length && Math.abs(controlAt(after) - here) < visible) after++
+    if (before < 0 || after >= points.length) continue
+    const sense = Math.sign(here - controlAt(before))
+    // of several turns that are one, the furthest in the direction in which the branch arrives
+    const group = points.slice(before + 1, after).filter((each) => each.mark === 'fold')
+    const furthest = group.reduce((best, each) =>
+      sense * (each.at.solution.cycle.p - best.at.solution.cycle.p) > 0 ? each : best,
+    )
+    if (sense * (here - controlAt(after)) > 0 && !out.includes(furthest)) out.push(furthest)
   }
   return out
-}
-
-/** Of several turns that are one, the furthest in the direction in which the branch arrives. */
-function outermost(points: readonly WalkedPoint[], group: readonly WalkedPoint[]): WalkedPoint {
-  const first = group[0] as WalkedPoint
-  const here = first.at.solution.cycle.p
-  const before = points
-    .slice(0, points.indexOf(first))
-    .findLast(({ at }) => Math.abs(at.solution.cycle.p - here) > 1e-6)
-  const sense = before ? Math.sign(here - before.at.solution.cycle.p) : 0
-  return group.reduce((best, each) => (sense * (each.at.solution.cycle.p - best.at.solution.cycle.p) > 0 ? each : best))
 }
 
 function cyclePoint(frame: Frame, { solution, measures, stable }: CycleAt): CardPoint {
