@@ -1,7 +1,7 @@
 import { spectrumHere } from '../frame.ts'
 import type { Spectrum } from '../spectrum.ts'
 import { withoutPair } from '../verdict.ts'
-import { enter, linearisePlane, type Plane } from './plane.ts'
+import { linearisePlane, type Plane } from './plane.ts'
 
 /** The eigenvalues beside the critical pair of an onset at z; null where they cannot be had. */
 export function besidePair(plane: Plane, z: Float64Array, omega: number): Spectrum | null {
@@ -21,7 +21,8 @@ export function besideZero(plane: Plane, z: Float64Array): Spectrum | null {
 
 /** All eigenvalues at z. */
 export function spectrumAt(plane: Plane, z: Float64Array): Spectrum | null {
-  enter(plane, z)
+  // eigenvalues cost as much as this many evaluations, roughly: counted, so that a request to stop is heard in time
+  plane.frame.budget.spend(plane.n)
   return linearisePlane(plane, z) ? spectrumHere(plane.frame) : null
 }
 

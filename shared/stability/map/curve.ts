@@ -74,7 +74,7 @@ export function correctOnto(
   const { right } = tracer
   let before = Number.POSITIVE_INFINITY
   for (let steps = 1; steps <= 10; steps++) {
-    if (!factorAt(tracer, y, reference, row)) return null
+    if (tracer.plane.frame.budget.spent() || !factorAt(tracer, y, reference, row)) return null
     solveLu(tracer.lu, right)
     let size = 0
     for (let i = 0; i < y.length; i++) {
@@ -111,6 +111,7 @@ export function vertexAt(tracer: Tracer, y: Float64Array, along: Float64Array): 
 export function startVertex(tracer: Tracer, y: Float64Array): CurveVertex | null {
   const { plane } = tracer
   for (const index of [plane.n, plane.n + 1, ...Array.from({ length: plane.n }, (_, i) => i)]) {
+    if (plane.frame.budget.spent()) return null
     const rough = vertexAt(tracer, y.slice(), axis(tracer, index))
     // an axis almost across the curve gives a poor tangent: take another
     if (!rough || Math.abs(rough.t[index] as number) < 0.05) continue

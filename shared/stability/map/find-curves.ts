@@ -65,7 +65,7 @@ export function findCurves(
     options.onCurve?.(found)
     waiting.push(...startsAt(found))
   }
-  return { curves, untraced }
+  return { curves, untraced: untraced.filter((start) => !curves.some((found) => isBeside(found, start))) }
 }
 
 function tracerAt(plane: Plane, start: Start) {
@@ -86,6 +86,12 @@ function atDoubleZero(plane: Plane, z: Float64Array) {
 function sameStart(a: CurveStart, b: CurveStart): boolean {
   if ((a.omega === null) !== (b.omega === null)) return false
   return a.z.every((value, i) => Math.abs(value - (b.z[i] as number)) <= 1e-6)
+}
+
+/** Where a curve ends for want of a value of the model, what lies just beyond its end is no loss. */
+function isBeside({ kind, curve }: FoundCurve, { z, omega }: CurveStart): boolean {
+  if ((kind === 'fold') !== (omega === null)) return false
+  return curve.vertices.some(({ y }) => gap(curve.tracer, y, z) < 1e-4)
 }
 
 function isKnown(curves: readonly FoundCurve[], start: Start): boolean {

@@ -60,6 +60,7 @@ function leftAlong(curve: Curve): (vertex: CurveVertex) => Float64Array | null {
     return same < 0 ? psi.map((value) => -value) : psi
   }
   for (const vertex of curve.vertices) {
+    if (plane.frame.budget.spent()) break
     const psi = at(vertex, previous)
     if (!psi) continue
     known.set(vertex, psi)

@@ -33,7 +33,8 @@ export function findCurveStarts(
   options: { shouldStop?: () => boolean; onProgress?: (share: number) => void },
 ): CurveStart[] {
   const { frame, n, second } = plane
-  const { model, budget } = frame
+  const { model } = frame
+  const budget = weighted(frame.budget, Math.ceil(n / 4))
   const firstValues = valuesOf(frame.own, frame.low, frame.high, valuesBetween)
   const secondValues = valuesOf(plane.own, plane.low, plane.high, valuesBetween)
   // searches with proof grow steeply with the number of states
@@ -65,6 +66,11 @@ export function findCurveStarts(
     collect(along, pathsThrough(along, found), (x, p) => place(plane, x, p, s), starts)
   })
   return starts
+}
+
+/** Along a branch every evaluation goes with eigenvalues, which grow faster with the states than the evaluation itself. */
+function weighted(budget: Budget, weight: number): Budget {
+  return { spend: (units) => budget.spend(weight * units), spent: budget.spent, reason: budget.reason }
 }
 
 /** A frame of the same model whose control is `moving`, with parameter `fixed` at a value. */

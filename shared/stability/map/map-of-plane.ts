@@ -5,7 +5,7 @@ import { placeText, type WarningList } from '../card-warnings.ts'
 import { controlOf, snapped, stateOf } from '../frame.ts'
 import { type FoundCurve, findCurves } from './find-curves.ts'
 import { createJudge, type Judge } from './judge-vertex.ts'
-import { createPlane, enter, type Plane, secondOf } from './plane.ts'
+import { createPlane, enter, insidePlane, type Plane, secondOf } from './plane.ts'
 import { liesInPlane } from './same-in-plane.ts'
 
 /** The map of two parameters as the card holds it. */
@@ -47,7 +47,7 @@ export function mapOfPlane(model: CompiledModel, warnings: WarningList, options:
     },
   })
   warn(plane, curves, warnings)
-  for (const { z, omega } of untraced) {
+  for (const { z, omega } of plane.frame.budget.spent() ? [] : untraced) {
     const what = omega === null ? 'turning points' : 'onsets'
     const message = `No curve of ${what} could be followed through ${placeOf(plane, z)}.`
     warnings.add({ code: 'budget-spent', message })
@@ -73,7 +73,7 @@ function warn(plane: Plane, curves: readonly FoundCurve[], warnings: WarningList
         const message = `A curve of the map leaves the range of ${symbol} at ${placeOf(plane, vertex.y)}.`
         warnings.add({ code: 'branch-left-box', message })
       }
-      if (end.kind === 'lost') {
+      if (end.kind === 'lost' && !plane.frame.budget.spent()) {
         const message = `A curve of the map could not be followed beyond ${placeOf(plane, vertex.y)}.`
         warnings.add({ code: 'budget-spent', message })
       }
@@ -100,16 +100,17 @@ function written(plane: Plane, judge: Judge, found: readonly FoundCurve[]): Plan
       const place = { p: pOf(y), s: secondOf(plane, y) }
       if (each.kind === 'fold') return place
       const omega = each.curve.tracer.system.omega(y) ?? 0
-      // where omega is zero the pair is none: what is said of the point beside it holds as far as it goes
-      const beside = each.judged[i] ?? each.judged[i === 0 ? 1 : i - 1]
-      const verdict = each.judged[i]?.verdict ?? ('degenerate' as const)
-      return { ...place, omega, verdict, operating: beside?.operating ?? false }
+      const said = each.judged[i]
+      if (said) return { ...place, omega, verdict: said.verdict, operating: said.operating }
+      // where the two eigenvalues have met at zero there is neither; what was not judged is not told
+      return omega === 0 ? { ...place, omega, verdict: 'degenerate' as const, operating: false } : { ...place, omega }
     })
     const [first, last] = [line[0], line[line.length - 1]]
     if (first && last && !each.curve.closed && (last.s < first.s || (last.s === first.s && last.p < first.p)))
       line.reverse()
     curves.push({ kind: each.kind, closed: each.curve.closed, points: line })
     for (const special of each.specials) {
+      if (!insidePlane(plane, special.vertex.y)) continue
       const place = { p: pOf(special.vertex.y), s: secondOf(plane, special.vertex.y) }
       if (points.some((known) => known.kind === special.kind && isSamePlace(plane, known, place))) continue
       const point: PlaneMap['points'][number] = { kind: special.kind, ...place }

@@ -109,12 +109,12 @@ export function createPlaneForm(plane: Plane): PlaneForm {
   }
 }
 
-/** Lower and upper bound of entry `index` of z, in its scaled unit. */
-export function boundsOf(plane: Plane, index: number): { low: number; high: number } {
+/** Lower and upper bound of entry `index` of z, in its scaled unit; a control's `margin` ranges further out. */
+export function boundsOf(plane: Plane, index: number, margin = 0): { low: number; high: number } {
   const { n, frame, unit } = plane
   const scale = 1 / (unit[index] as number)
-  if (index === n) return { low: frame.low * scale, high: frame.high * scale }
-  if (index === n + 1) return { low: plane.low * scale, high: plane.high * scale }
+  if (index === n) return { low: frame.low * scale - margin, high: frame.high * scale + margin }
+  if (index === n + 1) return { low: plane.low * scale - margin, high: plane.high * scale + margin }
   return { low: (frame.boxLow[index] as number) * scale, high: (frame.boxHigh[index] as number) * scale }
 }
 

@@ -9,7 +9,7 @@ import {
   type Tracer,
   vertexAt,
 } from './curve.ts'
-import { boundsOf, insidePlane } from './plane.ts'
+import { boundsOf } from './plane.ts'
 
 /** Why a curve ended: at the end of a range, where a state left its box, at omega = 0, in itself, or where it was lost. */
 export type CurveEnd = { kind: 'range-end' | 'closed' | 'double-zero' | 'lost' } | { kind: 'box-left'; state: number }
@@ -31,13 +31,21 @@ const shortestStep = 1e-7
 const largestTurn = 0.2
 const mostVertices = 3000
 
+/**
+ * How far beyond the ends of both ranges a curve is followed where it runs along an edge of the plane, as a share of them:
+ * now on this side of the edge, now on that, it would be cut to pieces. Its points there keep their true values.
+ */
+const overhang = 1e-3
+/** Arclength for which it must keep to the edge; one that crosses it ends on it. */
+const alongEdge = 1e-2
+
 /** Traces the curve through `start` both ways until it ends or closes. */
 export function traceCurve(tracer: Tracer, start: CurveVertex): Curve {
-  const forth = walkCurve(tracer, start)
+  const forth = walkOut(tracer, start)
   if (forth.end.kind === 'closed') {
     return { tracer, vertices: forth.vertices, ends: [forth.end, forth.end], closed: true }
   }
-  const back = walkCurve(tracer, reversed(start))
+  const back = walkOut(tracer, reversed(start))
   const vertices = [...back.vertices.slice(1).reverse().map(reversed), ...forth.vertices]
   return { tracer, vertices, ends: [back.end, forth.end], closed: false }
 }
@@ -46,15 +54,50 @@ function reversed(vertex: CurveVertex): CurveVertex {
   return { ...vertex, t: vertex.t.map((value) => -value) }
 }
 
+/** To the end of the range; beyond it only where the curve keeps to the edge, or comes back. */
+function walkOut(tracer: Tracer, start: CurveVertex): Walked {
+  const within = walkCurve(tracer, start, null)
+  const last = within.vertices[within.vertices.length - 1]
+  if (within.end.kind !== 'range-end' || !last) return within
+  const edge = edgeOf(tracer, last)
+  if (edge === null) return within
+  const beyond = walkCurve(tracer, last, { index: edge, size: overhang })
+  let length = 0
+  for (let i = 1; i < beyond.vertices.length; i++) {
+    length += gap(tracer, (beyond.vertices[i - 1] as CurveVertex).y, (beyond.vertices[i] as CurveVertex).y)
+  }
+  if (beyond.end.kind === 'lost' || length < alongEdge) return within
+  if (beyond.end.kind === 'closed') return within
+  return { vertices: [...within.vertices, ...beyond.vertices.slice(1)], end: beyond.end }
+}
+
+/** The control whose end a point lies on; null where it lies on neither. */
+function edgeOf({ plane }: Tracer, { y }: CurveVertex): number | null {
+  for (const index of [plane.n, plane.n + 1]) {
+    const { low, high } = boundsOf(plane, index)
+    const value = y[index] as number
+    if (Math.min(Math.abs(value - low), Math.abs(value - high)) <= 1e-9 * (high - low)) return index
+  }
+  return null
+}
+
+/** How much further out the range of one control is taken. */
+type Margin = { readonly index: number; readonly size: number } | null
+
+interface Walked {
+  readonly vertices: CurveVertex[]
+  readonly end: CurveEnd
+}
+
 /**
  * Pseudo-arclength from `start` along its tangent: predictor along the tangent, Newton across it, step length by the turn
  * of the tangent and the work of the corrector. Vertical and turning places are ordinary points to it.
  * Source: Keller 1977; Allgower & Georg, Numerical Continuation Methods 1990, chapters 3 and 6.
  */
-function walkCurve(tracer: Tracer, start: CurveVertex): { vertices: CurveVertex[]; end: CurveEnd } {
+function walkCurve(tracer: Tracer, start: CurveVertex, margin: Margin): Walked {
   const vertices = [start]
   const { plane } = tracer
-  const outward = leavesAtOnce(tracer, start)
+  const outward = leavesAtOnce(tracer, start, margin)
   if (outward) return { vertices, end: outward }
   let current = start
   let step = firstStep
@@ -66,7 +109,7 @@ function walkCurve(tracer: Tracer, start: CurveVertex): { vertices: CurveVertex[
       continue
     }
     const next = attempt.vertex
-    const stop = stopBetween(tracer, current, next)
+    const stop = stopBetween(tracer, current, next, margin)
     if (stop) {
       if (!stop.vertex && step > 4 * shortestStep) {
         step /= 2
@@ -112,14 +155,14 @@ interface Stop {
 }
 
 /** The end of the curve between two neighbours: omega = 0, or the first bound of box and ranges; null where neither. */
-function stopBetween(tracer: Tracer, a: CurveVertex, b: CurveVertex): Stop | null {
+function stopBetween(tracer: Tracer, a: CurveVertex, b: CurveVertex, margin: Margin): Stop | null {
   const { floor } = tracer.system
   if (floor !== null && (b.y[floor] as number) < 0) {
     const vertex = vertexOn(tracer, a, b, floor, 0)
     if (!vertex) return { end: { kind: 'double-zero' }, vertex: null }
-    if (insidePlane(tracer.plane, vertex.y)) return { end: { kind: 'double-zero' }, vertex }
+    if (exitBetween(tracer, a, vertex, margin) === null) return { end: { kind: 'double-zero' }, vertex }
   }
-  const exit = exitBetween(tracer, a, b)
+  const exit = exitBetween(tracer, a, b, margin)
   return exit ? { end: exit.end, vertex: vertexOn(tracer, a, b, exit.index, exit.bound) } : null
 }
 
@@ -128,12 +171,13 @@ function exitBetween(
   tracer: Tracer,
   a: CurveVertex,
   b: CurveVertex,
+  margin: Margin,
 ): { index: number; bound: number; end: CurveEnd } | null {
   const { plane } = tracer
   let share = Number.POSITIVE_INFINITY
   let exit: { index: number; bound: number; end: CurveEnd } | null = null
   for (let index = 0; index < plane.width; index++) {
-    const { low, high } = boundsOf(plane, index)
+    const { low, high } = boundsOf(plane, index, margin?.index === index ? margin.size : 0)
     const slack = 1e-9 * (high - low)
     const from = a.y[index] as number
     const to = b.y[index] as number
@@ -168,13 +212,13 @@ function vertexOn(tracer: Tracer, a: CurveVertex, b: CurveVertex, index: number,
 }
 
 /** On a bound, or at omega = 0, already, with the tangent pointing out. */
-function leavesAtOnce(tracer: Tracer, start: CurveVertex): CurveEnd | null {
+function leavesAtOnce(tracer: Tracer, start: CurveVertex, margin: Margin): CurveEnd | null {
   const { floor } = tracer.system
   if (floor !== null && (start.y[floor] as number) < 1e-9 && (start.t[floor] as number) < 0) {
     return { kind: 'double-zero' }
   }
   const ahead = { ...start, y: start.y.map((value, i) => value + 1e-6 * (start.t[i] as number)) }
-  return exitBetween(tracer, start, ahead)?.end ?? null
+  return exitBetween(tracer, start, ahead, margin)?.end ?? null
 }
 
 /** True where the step from a to b passes the start in the direction in which the walk began. */
