@@ -8,6 +8,7 @@ import { type CollabLimits, collabLimits } from './limits.ts'
 import { joinRefusal, type PageAccess } from './policy.ts'
 import { TokenBucket } from './rate.ts'
 import { type CollabLog, type Room, Rooms } from './rooms.ts'
+import { within } from './within.ts'
 
 /** What the server around tells the sockets, once it is committed (server/event-bus.ts). */
 export type CollabEvent =
@@ -305,16 +306,4 @@ function refuse(socket: Duplex, status: number): void {
       socket.destroy()
     },
   )
-}
-
-async function within<T>(time: number, work: Promise<T>): Promise<T> {
-  let timer: NodeJS.Timeout | undefined
-  const late = new Promise<never>((_, reject) => {
-    timer = setTimeout(() => reject(new Error(`No answer within ${time} ms.`)), time)
-  })
-  try {
-    return await Promise.race([work, late])
-  } finally {
-    clearTimeout(timer)
-  }
 }

@@ -1,5 +1,6 @@
 import type { Server } from 'node:http'
 import type { Logger } from 'pino'
+import { Late, within } from '#collab/within.ts'
 
 export interface Stoppable {
   logger: Logger
@@ -13,19 +14,6 @@ export interface Stoppable {
   /** Last, one after the other: child processes, session store, database. */
   release: (() => Promise<void>)[]
   exit: (code: number) => void
-}
-
-/** Resolves at the latest after so many milliseconds; true if the work was done by then. */
-async function within(milliseconds: number, work: Promise<unknown>): Promise<boolean> {
-  let timer: NodeJS.Timeout | undefined
-  const late = new Promise<false>((resolve) => {
-    timer = setTimeout(resolve, milliseconds, false)
-  })
-  try {
-    return await Promise.race([work.then(() => true), late])
-  } finally {
-    clearTimeout(timer)
-  }
 }
 
 /**
@@ -43,10 +31,11 @@ export function createStop(parts: Stoppable): (code: number, reason: string) => 
     let clean = true
     const attempt = async (what: string, work: () => Promise<unknown>) => {
       try {
-        if (await within(parts.drain, work())) return
-        parts.logger.warn({ what }, 'not done in time')
+        await within(parts.drain, work())
+        return
       } catch (error) {
-        parts.logger.error({ err: error, what }, 'failed while stopping')
+        if (error instanceof Late) parts.logger.warn({ what }, 'not done in time')
+        else parts.logger.error({ err: error, what }, 'failed while stopping')
       }
       clean = false
     }

@@ -1,6 +1,7 @@
 import { statfs } from 'node:fs/promises'
 import { sql } from 'drizzle-orm'
 import { type RequestHandler, Router } from 'express'
+import { within } from '#collab/within.ts'
 import { isMigrated } from '#drizzle/migrate.ts'
 import type { Dependencies } from './context.ts'
 
@@ -12,12 +13,11 @@ export interface Readiness {
 }
 
 async function databaseReady({ db, limits }: Dependencies): Promise<boolean> {
-  const late = new Promise<false>((resolve) => setTimeout(resolve, limits.ready.ping, false).unref())
   const ping = async () => {
     await db.execute(sql`select 1`)
     return isMigrated(db)
   }
-  return Promise.race([ping(), late]).catch(() => false)
+  return within(limits.ready.ping, ping()).catch(() => false)
 }
 
 /** Enough of the data directory's disk is free; true where there is no such directory here (a database elsewhere). */

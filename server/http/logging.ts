@@ -10,7 +10,8 @@ import { AppError } from './app-error.ts'
 function errorFields(error: unknown): Record<string, unknown> {
   if (!(error instanceof Error)) return { name: typeof error }
   const frames = (error.stack ?? '').split('\n').filter((line) => /^\s+at /.test(line))
-  const { code, errno } = error as Error & { code?: unknown; errno?: unknown }
+  const code = 'code' in error ? error.code : undefined
+  const errno = 'errno' in error ? error.errno : undefined
   const known = error instanceof AppError ? { detail: error.detail } : {}
   const cause = error.cause === undefined ? {} : { cause: errorFields(error.cause) }
   return { name: error.name, code, errno, ...known, at: frames.slice(0, 12).map((line) => line.trim()), ...cause }

@@ -1,6 +1,12 @@
 import { createHash } from 'node:crypto'
 import { type IncomingMessage, ServerResponse } from 'node:http'
-import type { CookieOptions, Request, RequestHandler, Response } from 'express'
+import express, {
+  type CookieOptions,
+  type ErrorRequestHandler,
+  type Request,
+  type RequestHandler,
+  type Response,
+} from 'express'
 import createStore from 'express-mysql-session'
 import session from 'express-session'
 import passport from 'passport'
@@ -153,13 +159,18 @@ export function createSessionGate(dependencies: Dependencies, limiter: Limiter):
         if (claim) await endSession(claim, now, String(request.id))
       },
     }),
-    async claimOf(request) {
-      // express-session wants an express request; it reads only the cookie header of one that is new.
-      const read = request as Request
-      await settled((done) => sessionMiddleware(read, new ServerResponse(request) as Response, done))
-      const found = keptInSession.safeParse(read.session)
-      return found.success ? { ...found.data.passport.user, sessionHash: hashOf(read.sessionID) } : null
-    },
+    claimOf: (request) =>
+      new Promise((resolve, reject) => {
+        // An upgrade comes without express, which the session's middleware is written for. Nothing is answered here.
+        const reader = express()
+        reader.use(sessionMiddleware, (read) => {
+          const found = keptInSession.safeParse(read.session)
+          resolve(found.success ? { ...found.data.passport.user, sessionHash: hashOf(read.sessionID) } : null)
+        })
+        const failed: ErrorRequestHandler = (error, _request, _response, _next) => reject(error)
+        reader.use(failed)
+        reader(request, new ServerResponse(request))
+      }),
     close: () => store.close(),
   }
 }

@@ -1,8 +1,7 @@
 import { z } from 'zod'
 import { cardWarning, type StabilityCard, steadyState } from '#shared/model/card-document.ts'
 import type { ModelDocument } from '#shared/model/document.ts'
-import type { DraftContent } from '#shared/model/draft.ts'
-import { errorCodes } from '#shared/model/errors.ts'
+import { draftContent, modelError } from '#shared/model/schemas.ts'
 import { cardStages } from '#shared/stability/messages.ts'
 
 /**
@@ -18,10 +17,9 @@ import { cardStages } from '#shared/stability/messages.ts'
 const record = (value: unknown): value is Record<string, unknown> => typeof value === 'object' && value !== null
 const document = z.custom<ModelDocument>((value) => record(value) && value.format === 'brinkbook-model')
 const card = z.custom<StabilityCard>((value) => record(value) && value.format === 'brinkbook-card')
-const draft = z.custom<DraftContent>((value) => record(value) && typeof value.equations === 'string')
 
 const request = z.discriminatedUnion('kind', [
-  z.object({ kind: z.literal('draft'), id: z.number(), draft }),
+  z.object({ kind: z.literal('draft'), id: z.number(), draft: draftContent }),
   z.object({ kind: z.literal('at'), id: z.number(), document, p: z.number() }),
 ])
 export type WorkerRequest = z.infer<typeof request>
@@ -34,16 +32,6 @@ const draftLine = z.object({
   text: z.string(),
 })
 export type DraftLine = z.infer<typeof draftLine>
-
-const modelError = z.object({
-  code: z.enum(errorCodes),
-  message: z.string(),
-  line: z.number().optional(),
-  column: z.number().optional(),
-  length: z.number().optional(),
-  path: z.string().optional(),
-  cures: z.array(z.object({ label: z.string(), replacement: z.string() })).optional(),
-})
 
 const checkedReply = z.object({
   kind: z.literal('checked'),

@@ -140,9 +140,9 @@ describe('the server process', () => {
 
   test('is not ready on tables that are behind, and says no more than that', async () => {
     const server = await startServer()
-    await database.db.execute('update __drizzle_migrations set created_at = created_at - 1')
+    await database.db.execute('update __drizzle_migrations set hash = reverse(hash)')
     const answer = await fetch(`${server.address}/readyz`)
-    await database.db.execute('update __drizzle_migrations set created_at = created_at + 1')
+    await database.db.execute('update __drizzle_migrations set hash = reverse(hash)')
     expect(answer.status).toBe(503)
     expect(await answer.text()).toBe('not ready\n')
     expect((await fetch(`${server.address}/readyz`)).status).toBe(200)
