@@ -26,7 +26,7 @@ export function TitleBlock({
         <h1 className="text-title wrap-anywhere">{title}</h1>
         {note && <p className="text-note text-ink-2">{note}</p>}
       </div>
-      <dl className="flex min-w-0 basis-full max-tablet:border-t max-tablet:border-rule tablet:basis-auto">
+      <dl className="flex min-w-0 basis-full max-tablet:border-t max-tablet:border-rule tablet:max-w-[76%] tablet:shrink-0 tablet:basis-auto">
         {cells.map((cell) => (
           <div
             key={cell.label}
@@ -36,7 +36,7 @@ export function TitleBlock({
             )}
           >
             <dt className="text-label whitespace-nowrap text-ink-3">{cell.label}</dt>
-            <dd className="mt-1 font-[560] tablet:whitespace-nowrap">{cell.value}</dd>
+            <dd className="mt-1 font-[560] bench:whitespace-nowrap">{cell.value}</dd>
           </div>
         ))}
       </dl>

@@ -62,10 +62,10 @@ export function Verdicts({ compared: { was, now, cards } }: { compared: Comparis
   )
 }
 
-/** The edges one under the other, to scale: how it moved. */
+/** On a phone, where the drawing is far down: the edges one under the other, to scale. */
 function Strips({ compared }: { compared: readonly NonNullable<Comparison['was']>[] }) {
   return (
-    <dl className="grid gap-2 border-t border-rule px-4 py-3">
+    <dl className="grid gap-2 border-t border-rule px-4 py-3 tablet:hidden">
       {compared.map(({ mark, revision }) => (
         <div key={mark} className="grid grid-cols-[4.5rem_1fr] items-center">
           <dt className="figures text-note">{mark}</dt>

@@ -140,10 +140,10 @@ function Shown({ page, mark, section }: { page: Page; mark: string; section: 'mo
   if (!document || !revision.stabilityCard) return <NewerKind />
   if (section === 'model') return <ModelSheet document={document} lines={revision.lines} sources={revision.sources} />
   return (
-    <div className="grid grid-cols-1 gap-4 wide:grid-cols-[minmax(0,1fr)_368px]">
+    <div className="grid grid-cols-1 items-start gap-4 bench:grid-cols-[minmax(0,1fr)_320px] min-[85rem]:grid-cols-[minmax(0,1fr)_368px]">
       <StabilityCardView document={document} card={revision.stabilityCard} state="stored" at={at} onAt={setAt} />
       <aside
-        className="sheet grid content-start gap-6 p-5 bench:max-wide:grid-cols-2"
+        className="sheet grid content-start gap-6 p-5 tablet:max-bench:grid-cols-2"
         aria-label="Equations and sources"
       >
         <section aria-labelledby="side-equations">

@@ -8,11 +8,12 @@ import { useMe, useViewer } from '#src/api/session.ts'
 import { ButtonLink } from '#src/components/button.tsx'
 import { Waiting } from '#src/components/pencil-line.tsx'
 import { SourceList } from '#src/features/citations/source-list.tsx'
+import { PhoneFoot } from '#src/features/reviews/phone-foot.tsx'
 import { RemarkList } from '#src/features/reviews/remark-list.tsx'
 import { SignBox } from '#src/features/reviews/sign-box.tsx'
 import { UnsentRemarks } from '#src/features/reviews/unsent-remarks.tsx'
 import { useRemarks } from '#src/features/reviews/use-remarks.ts'
-import { useReviewKeys } from '#src/features/reviews/use-review-keys.ts'
+import { toRemark, useReviewKeys } from '#src/features/reviews/use-review-keys.ts'
 import { ModelHead } from '#src/features/revisions/model-head.tsx'
 import { TakeBackButton } from '#src/features/revisions/revision-acts.tsx'
 import { StateBand } from '#src/features/revisions/state-band.tsx'
@@ -61,6 +62,9 @@ function Review({ page, revision, inForce }: { page: Page; revision: Revision; i
       {!compared && <NewerKind />}
       {compared && open && <Consequence page={page} compared={compared} verb="Approving this" />}
       {compared && <Columns page={page} revision={revision} compared={compared} open={open} />}
+      {compared && open && (
+        <PhoneFoot mayRemark={page.may.includes('revision:return')} onRemark={() => toRemark(area.current)} />
+      )}
     </main>
   )
 }
@@ -89,7 +93,7 @@ function whyNot(page: Page, revision: Revision, me: number): string | null {
   if (page.may.includes('revision:approve')) return null
   const wrote = revision.signatures.some((one) => one.meaning === 'written' && one.person.id === me)
   return wrote
-    ? 'You wrote in it, so somebody else has to check and approve it.'
+    ? 'You wrote in it. Somebody else has to check and approve it.'
     : 'Only a maintainer of the group can approve it.'
 }
 

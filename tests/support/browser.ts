@@ -21,6 +21,8 @@ export const phone = { width: 390, height: 844 }
 export interface TabOptions {
   size?: { width: number; height: number }
   scheme?: 'light' | 'dark'
+  /** The browser's language; default British English. */
+  locale?: string
   /**
    * Console errors this test brings about on purpose, such as /status of 401/ for a wrong password (the browser itself
    * logs every answer from 400 on). Anything else in the console, an uncaught error or a violation of the page's policy
@@ -74,14 +76,19 @@ export function browserLibrary(options: { environment?: Record<string, string> }
   })
 
   /** A browser window of its own, with its own cookies; whatever goes wrong in it fails the test. */
-  async function tab({ size = desktop, scheme = 'light', expected = [] }: TabOptions = {}): Promise<Page> {
+  async function tab({
+    size = desktop,
+    scheme = 'light',
+    locale = 'en-GB',
+    expected = [],
+  }: TabOptions = {}): Promise<Page> {
     const { library, browser: chrome } = running()
     const context = await chrome.newContext({
       viewport: size,
       colorScheme: scheme,
       reducedMotion: 'reduce',
       baseURL: library.origin,
-      locale: 'en-GB',
+      locale,
     })
     contexts.add(context)
     await context.exposeBinding(

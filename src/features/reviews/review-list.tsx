@@ -25,8 +25,9 @@ export function ReviewList({ title, rows, empty }: { title: string; rows: readon
                 {row.title}
               </Link>
               <p className="text-note text-ink-2">
-                <span className="figures">{row.code}</span> {row.group.name}, revision{' '}
-                <span className="figures">{row.revision.mark}</span>, sent by {row.revision.sentBy.name},{' '}
+                <span className="figures mr-2 text-label text-ink">{row.code}</span>
+                {row.group.name}, revision <span className="figures text-label">{row.revision.mark}</span>, sent by{' '}
+                {row.revision.sentBy.name},{' '}
                 <time dateTime={row.revision.sentAt} title={momentWithOffset(row.revision.sentAt)}>
                   {dayOf(row.revision.sentAt)}
                 </time>

@@ -18,12 +18,16 @@ export interface SignBoxProps {
   onSettled: (what: 'Approved' | 'Returned with remarks') => void
 }
 
-/** Where a revision is settled: returned with remarks, or, on a screen that shows it in full, approved with the password. */
+/**
+ * Where a revision is settled: returned with remarks, or, on a screen that shows it in full, approved with the password. A
+ * phone says at its foot why not there (phone-foot.tsx).
+ */
 export function SignBox({ code, revision, whyNot, mayReturn, targets, remarks, onSettled }: SignBoxProps) {
   const phone = usePhone()
   const approve = useApproveRevision(code, revision.mark)
   const giveBack = useReturnRevision(code, revision.mark)
   const { etag } = revision
+  if (phone && !mayReturn) return null
   return (
     <section aria-label="Settle this review" className="sheet grid content-start gap-5 p-4">
       {mayReturn && (
@@ -45,11 +49,7 @@ export function SignBox({ code, revision, whyNot, mayReturn, targets, remarks, o
           }
         />
       )}
-      {phone ? (
-        <p className="text-note text-ink-2">
-          {mayReturn && 'You can remark here. '}Approving needs the equations in full, on a wider screen.
-        </p>
-      ) : (
+      {!phone && (
         <ApproveForm
           whyNot={whyNot}
           openRemarks={written(remarks.all).length}

@@ -16,13 +16,17 @@ export function useReviewKeys(area: RefObject<HTMLElement | null>): void {
   useSingleKeys((key) => {
     const root = area.current
     if (!root) return false
-    if (key === 'm') return focusOn(root.querySelector<HTMLElement>('[data-remark]'))
+    if (key === 'm') return toRemark(root)
     if (key !== 'n' && key !== 'p') return false
     const changes = [...root.querySelectorAll<HTMLElement>('[data-change]')].filter((one) => one.offsetParent !== null)
     const current = changes.findIndex((one) => one.contains(document.activeElement))
     return focusOn(changes[nextPlace(changes.length, current, key === 'n' ? 1 : -1)] ?? null)
   })
 }
+
+/** Puts the focus where a remark is written; false where none can be. */
+export const toRemark = (area: HTMLElement | null): boolean =>
+  focusOn(area?.querySelector<HTMLElement>('[data-remark]') ?? null)
 
 function focusOn(element: HTMLElement | null): boolean {
   if (!element) return false

@@ -4,6 +4,7 @@ import type { ModelDocument } from '#shared/model/document.ts'
 import { ModelSymbol } from '#src/components/symbol.tsx'
 import { Cell, Row, Table, TableHead } from '#src/components/table.tsx'
 import { exactFigure } from '#src/lib/figures.ts'
+import { unitText } from '#src/lib/onset-figures.ts'
 import { EquationLines } from './equation-lines.tsx'
 
 /** Which sources a line or a parameter cites, as numbers in the page's list of sources. */
@@ -33,7 +34,7 @@ export function ModelSheet({
   const cited = citedBy(sources)
   return (
     <div className="grid grid-cols-1 content-start gap-4 bench:grid-cols-2">
-      <section aria-labelledby="sheet-equations" className="sheet p-5">
+      <section aria-labelledby="sheet-equations" className="sheet min-w-0 p-5">
         <h2 id="sheet-equations" className="mb-3 text-subtitle">
           Equations
         </h2>
@@ -55,8 +56,8 @@ export function ModelSheet({
           </>
         )}
       </section>
-      <div className="grid min-w-0 content-start gap-4">
-        <section aria-labelledby="sheet-parameters" className="sheet pt-4">
+      <div className="grid min-w-0 grid-cols-1 content-start gap-4">
+        <section aria-labelledby="sheet-parameters" className="sheet min-w-0 pt-4">
           <h2 id="sheet-parameters" className="px-4 text-subtitle">
             Parameters
           </h2>
@@ -84,7 +85,7 @@ export function ModelSheet({
                     )}
                   </Cell>
                   <Cell className="figures text-right text-note">{exactFigure(row.value)}</Cell>
-                  <Cell className="text-note">{row.unit}</Cell>
+                  <Cell className="text-note">{unitText(row.unit ?? '')}</Cell>
                   <Cell className="figures text-note whitespace-nowrap">
                     {row.low === undefined ? '' : `${exactFigure(row.low)} to ${exactFigure(row.high)}`}
                   </Cell>
@@ -105,7 +106,7 @@ export function ModelSheet({
             </tbody>
           </Table>
         </section>
-        <section aria-labelledby="sheet-states" className="sheet pt-4">
+        <section aria-labelledby="sheet-states" className="sheet min-w-0 pt-4">
           <h2 id="sheet-states" className="px-4 text-subtitle">
             States
           </h2>
@@ -123,7 +124,7 @@ export function ModelSheet({
                   <Cell className="figures text-note">
                     {row.start === undefined ? 'middle' : exactFigure(row.start)}
                   </Cell>
-                  <Cell className="text-note">{row.unit}</Cell>
+                  <Cell className="text-note">{unitText(row.unit ?? '')}</Cell>
                 </Row>
               ))}
             </tbody>

@@ -43,7 +43,7 @@ export function RevisionDay({ revision }: { revision: RevisionHead }) {
   )
 }
 
-/** A revision on a phone: triangle, what changed, who signed, strip, state and day, one under the other. */
+/** A revision on a narrow screen: triangle, what changed, who signed, strip, state and day, one under the other. */
 export function RecordItem({ code, revision, ticked, onTick }: RecordRowProps) {
   const signed = (['written', 'checked', 'approved'] as const)
     .map((meaning) => ({ meaning, names: signersOf(revision, meaning).map(({ name }) => name) }))
@@ -70,7 +70,7 @@ export function RecordItem({ code, revision, ticked, onTick }: RecordRowProps) {
         <p className="flex flex-wrap justify-between gap-2 text-note">
           <StateWord state={revision.state} />
           <span className="text-ink-2">
-            <span className="figures">{revision.mark}</span>, <RevisionDay revision={revision} />
+            <span className="figures text-label">{revision.mark}</span>, <RevisionDay revision={revision} />
           </span>
         </p>
       </div>

@@ -6,7 +6,7 @@ import { OnsetWord } from '#src/components/onset-glyph.tsx'
 import { RevisionTriangle } from '#src/components/revision-triangle.tsx'
 import { StateWord } from '#src/components/signature-strip.tsx'
 import { Cell, Row, Table, TableHead } from '#src/components/table.tsx'
-import { usePhone } from '#src/hooks/use-media.ts'
+import { useMedia } from '#src/hooks/use-media.ts'
 import { classes } from '#src/lib/class-names.ts'
 import { momentWithOffset } from '#src/lib/times.ts'
 import { CompareTick, RecordItem, type RecordRowProps, RevisionDay, signersOf } from './record-rows.tsx'
@@ -21,7 +21,8 @@ export interface RecordTableProps {
 
 /** All revisions of a page as a drawing's revision table, newest first. Any can be opened; two can be compared. */
 export function RecordTable({ code, revisions, ticked, onTick }: RecordTableProps) {
-  const phone = usePhone()
+  // The table needs a bench's width; narrower, a revision is a block of its own.
+  const narrow = useMedia('(width < 70rem)')
   // Newest first on both sides, so that "was" is always the older one.
   const [newer, older] = revisions.map((revision) => revision.mark).filter((mark) => ticked.includes(mark))
   const tick = (mark: string, on: boolean) =>
@@ -48,7 +49,7 @@ export function RecordTable({ code, revisions, ticked, onTick }: RecordTableProp
           </ButtonLink>
         )}
       </div>
-      {phone ? (
+      {narrow ? (
         <ul aria-label="Revisions, newest first">
           {rows.map((row) => (
             <RecordItem key={row.revision.mark} {...row} />
@@ -99,7 +100,7 @@ function RecordRow({ code, revision, ticked, onTick }: RecordRowProps) {
       <Cell className="tablet:px-2">
         <StateWord state={revision.state} />
         <span className="mt-0.5 block text-note whitespace-nowrap text-ink-2">
-          <span className="figures">{revision.mark}</span>, <RevisionDay revision={revision} />
+          <span className="figures text-label">{revision.mark}</span>, <RevisionDay revision={revision} />
         </span>
       </Cell>
       <Cell className="min-w-52 font-[560]">
@@ -111,7 +112,7 @@ function RecordRow({ code, revision, ticked, onTick }: RecordRowProps) {
       <Signers revision={revision} meaning="written" />
       <Signers revision={revision} meaning="checked" />
       <Signers revision={revision} meaning="approved" />
-      <Cell>{revision.card && <EdgeStrip card={revision.card} width={180} faded={quiet} />}</Cell>
+      <Cell className="min-w-52">{revision.card && <EdgeStrip card={revision.card} width={180} faded={quiet} />}</Cell>
       <Cell>{revision.card && <OnsetWord kind={revision.card.kind} size={20} />}</Cell>
     </Row>
   )

@@ -1,7 +1,7 @@
 import type { HopfPoint } from '#shared/model/card-document.ts'
 import type { CardDifference, Judged } from '#shared/stability/compare.ts'
 import { type CardSummary, summarise } from '#shared/stability/summary.ts'
-import { readerNumber } from '#src/lib/figures.ts'
+import { exactFigure, readerNumber, shortFigure } from '#src/lib/figures.ts'
 import { kindWord } from '#src/lib/kind-words.ts'
 import { frequencyText, onsetText, otherLimit, unitText } from '#src/lib/onset-figures.ts'
 
@@ -35,8 +35,13 @@ function limitOf(side: Read): string {
 function steadyOf(side: Read): string {
   const { window } = side.judged.card
   if (!window) return 'not steady'
-  const from = readerNumber(window.from, { digits: 4, rounding: 'up' })
-  const to = readerNumber(window.to, { digits: 4, rounding: 'down' })
+  // An end of the range was entered, nothing is lost there; any other end is rounded into the steady side.
+  const from =
+    window.low.kind === 'range-end'
+      ? shortFigure(window.from)
+      : readerNumber(window.from, { digits: 4, rounding: 'up' })
+  const to =
+    window.high.kind === 'range-end' ? shortFigure(window.to) : readerNumber(window.to, { digits: 4, rounding: 'down' })
   return `${from} to ${withUnit(to, side)}`
 }
 
@@ -60,7 +65,7 @@ export function verdictRows(before: Judged, after: Judged): VerdictRow[] {
     row('Steady from', steadyOf),
     row('Cubic coefficient', ({ onset }) => signed(onset?.cubic)),
     row('Crossing rate', ({ onset }) => signed(onset?.crossing)),
-    row('Running at', (side) => withUnit(readerNumber(side.summary.control.value, { digits: 4 }), side)),
+    row('Running at', (side) => withUnit(exactFigure(side.summary.control.value), side)),
   ]
 }
 
