@@ -26,7 +26,8 @@ export function saveWords(state: DraftConnectionState): string {
     case 'connecting':
       return 'Opening the draft'
     case 'saved':
-      return 'Saved'
+      // Until the room said that it takes edits the editor takes none, and "Saved" would invite them.
+      return state.room === null ? 'Opening the draft' : 'Saved'
     case 'saving':
       if (state.room === 'live' || state.room === null) return 'Saving'
       // Held back, for a reason that stands in the band.
