@@ -5,7 +5,7 @@ import { draftWriters, memberships, pages, pageUpdates, people } from '#drizzle/
 import { closeCodes, closeReasons } from '#shared/ydoc/rooms.ts'
 import { equationsOf, parametersOf, settingsOf } from '#shared/ydoc/shape.ts'
 import { attachToWindow, type DraftConnection } from '#src/features/editor/draft-connection.ts'
-import { committed, makePage, makePeople, smallDraft } from '#tests/support/collab-pages.ts'
+import { committed, makePage, makePeople, makeRevision, smallDraft } from '#tests/support/collab-pages.ts'
 import {
   type CollabServerForTests,
   changedLimits,
@@ -75,7 +75,7 @@ describe('while a review is under way', () => {
     const { server, pageId, tokens } = await setUp()
     const [left, right] = [open(server, pageId, tokens.anna), open(server, pageId, tokens.boris)]
     await Promise.all([saved(left), saved(right)])
-    await setPage(pageId, { inReviewId: 7 })
+    await setPage(pageId, { inReviewId: await makeRevision(database.db, pageId) })
     server.tell({ kind: 'page-changed', pageId })
     await Promise.all([roomIs(left, 'locked'), roomIs(right, 'locked')])
     equationsOf(left.doc).insert(0, 'typed during the review\n')
@@ -96,7 +96,7 @@ describe('while a review is under way', () => {
     const client = open(server, pageId, tokens.anna)
     await saved(client)
     // No event: the edit is applied and shown before the append finds the review.
-    await setPage(pageId, { inReviewId: 7 })
+    await setPage(pageId, { inReviewId: await makeRevision(database.db, pageId) })
     equationsOf(client.doc).insert(0, 'too late\n')
     await roomIs(client, 'locked')
     await until(() => client.getState().phase === 'saving', 'joined again')

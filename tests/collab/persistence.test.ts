@@ -13,7 +13,7 @@ import {
 } from '#collab/persistence.ts'
 import { draftWriters, pageSnapshots, pages, pageUpdates } from '#drizzle/schema/index.ts'
 import { equationsOf, readDraft } from '#shared/ydoc/shape.ts'
-import { committed, makePage, makePeople, smallDraft } from '#tests/support/collab-pages.ts'
+import { committed, makePage, makePeople, makeRevision, smallDraft } from '#tests/support/collab-pages.ts'
 import { freshDatabase } from '#tests/support/database.ts'
 
 const now = new Date('2026-12-01T08:00:00.000Z')
@@ -137,7 +137,7 @@ describe('an append is refused, and nothing of it is written,', () => {
 
   test('while a review is under way', async () => {
     const owned = await ownedPage()
-    await change(owned.pageId, { inReviewId: 1 })
+    await change(owned.pageId, { inReviewId: await makeRevision(database.db, owned.pageId) })
     expect(await refused(owned)).toEqual({ ok: false, reason: 'locked' })
   })
 

@@ -6,7 +6,7 @@ import { pages } from '#drizzle/schema/index.ts'
 import { type PageRole, type PageState, pageRoles, pageStates } from '#shared/api/roles.ts'
 import { closeCodes } from '#shared/ydoc/rooms.ts'
 import { equationsOf } from '#shared/ydoc/shape.ts'
-import { committed, makePage, makePeople, smallDraft } from '#tests/support/collab-pages.ts'
+import { committed, makePage, makePeople, makeRevision, smallDraft } from '#tests/support/collab-pages.ts'
 import { type CollabServerForTests, changedLimits, startCollab, until } from '#tests/support/collab-server.ts'
 import { freshDatabase } from '#tests/support/database.ts'
 import { RawSocket } from '#tests/support/raw-socket.ts'
@@ -85,13 +85,17 @@ describe('with real sockets', () => {
 
   async function pageIn(role: PageRole, state: PageState): Promise<number> {
     const pageId = await makePage(database.db, groupId)
+    const inForceId = state.startsWith('in-force')
+      ? await makeRevision(database.db, pageId, { number: 1, state: 'in-force' })
+      : null
+    const inReviewId = state.endsWith('in-review') ? await makeRevision(database.db, pageId, { number: 2 }) : null
     await database.db
       .update(pages)
       .set({
         access: role === 'visitor' ? 'open' : 'group',
-        inForceId: state.startsWith('in-force') ? 1 : null,
+        inForceId,
         everPublic: published.includes(state) ? 1 : 0,
-        inReviewId: state.endsWith('in-review') ? 2 : null,
+        inReviewId,
         removedAt: state === 'removed' ? new Date() : null,
       })
       .where(eq(pages.id, pageId))

@@ -1,7 +1,7 @@
 import { eq } from 'drizzle-orm'
 import { createDraft, loadDocument } from '#collab/persistence.ts'
 import type { Database } from '#drizzle/client.ts'
-import { groups, memberships, pages, people } from '#drizzle/schema/index.ts'
+import { cards, groups, memberships, pages, people, revisions } from '#drizzle/schema/index.ts'
 import type { MemberRole } from '#shared/api/roles.ts'
 import type { DraftContent } from '#shared/model/draft.ts'
 import { readDraft } from '#shared/ydoc/shape.ts'
@@ -58,6 +58,47 @@ export async function makePage(db: Database, groupId: number, content: DraftCont
     await createDraft(tx, insertId, 1, content, then)
     return insertId
   })
+}
+
+/** A revision of the page, so that the page's row can point at one in force or under review. @returns its id. */
+export async function makeRevision(
+  db: Database,
+  pageId: number,
+  { number = 1, state = 'in-review' }: { number?: number; state?: 'in-review' | 'in-force' } = {},
+): Promise<number> {
+  const key = `sha256:${pageId}-${number}`
+  const [card] = await db
+    .insert(cards)
+    .values({ fingerprint: key, engine: '0.0.0', parts: 'steady,hopf', card: {}, at: then })
+    .$returningId()
+  const [sender] = await db
+    .insert(people)
+    .values({ email: `sender-${++counter}@example.org`, name: 'Some sender', createdAt: then })
+    .$returningId()
+  if (!card || !sender) throw new Error('no card or no sender')
+  const [revision] = await db
+    .insert(revisions)
+    .values({
+      pageId,
+      number,
+      major: number,
+      minor: 0,
+      patch: 0,
+      state,
+      summary: 'Sent for a test',
+      document: {},
+      digest: key,
+      fingerprint: key,
+      engine: '0.0.0',
+      cardId: card.id,
+      cardSummary: {},
+      generation: 1,
+      sentBy: sender.id,
+      sentAt: then,
+    })
+    .$returningId()
+  if (!revision) throw new Error('no revision')
+  return revision.id
 }
 
 /** The committed draft as plain strings, from a document loaded afresh. */
