@@ -97,9 +97,12 @@ export const runningWindow = z.object({
     .optional(),
 })
 
-/** `closed`: the branch comes back to where it was entered (a closed branch that meets no onset in range). */
+/**
+ * `closed`: the branch comes back to where it was entered (a closed branch that meets no onset in range);
+ * `period-doubling`: a branch of doubled period meets the branch it springs from.
+ */
 const cycleEnd = z.object({
-  kind: z.enum(['range-end', 'box-left', 'onset', 'homoclinic', 'budget', 'closed']),
+  kind: z.enum(['range-end', 'box-left', 'onset', 'homoclinic', 'budget', 'closed', 'period-doubling']),
   p: finite,
 })
 

@@ -7,6 +7,7 @@ import { besideCycles, clipped, inUnits, isStretch, merged, type Stretch1 } from
 import { type CycleBranch, growFromCycle, growFromOnsets, isMultiple, positionOf } from './cycle-branches.ts'
 import { listCycles } from './cycle-lists.ts'
 import { type CycleSpace, createCycleSpace } from './cycle-system.ts'
+import { besideIrregular } from './irregular.ts'
 import { growFromIntegration } from './isolas.ts'
 import { type Jump, jumpPast } from './jumps.ts'
 import { toleratedKicks } from './kicks.ts'
@@ -58,15 +59,16 @@ export function computeCycles(input: CyclesInput): CyclesPart {
   const onsets = hopf.map(({ point, index }): Onset => ({ index, z: point.sample.z, omega: point.omega }))
   const { branches, lost } = growFromOnsets(space, onsets)
   tell(0.4)
-  for (const { index } of lost) {
-    const p = hopf[index]?.card.p ?? 0
-    const message = `No oscillation could be computed from the onset at ${symbolOf(frame)} = ${Number(p.toPrecision(4))}.`
-    warnings.push({ code: 'budget-spent', message })
-  }
   growFromIntegration(space, branches, lists.paths, onsets)
   tell(0.7)
   const done = window ? completed(space, lists, branches, onsets, window) : null
   const out = listCycles(frame, branches, hopf)
+  for (const { index } of lost) {
+    if (branches.some(({ hopf: from, end }) => from === index || end.onset === index)) continue
+    const p = hopf[index]?.card.p ?? 0
+    const message = `No oscillation could be computed from the onset at ${symbolOf(frame)} = ${Number(p.toPrecision(4))}.`
+    warnings.push({ code: 'budget-spent', message })
+  }
   for (const branch of out.cycles) {
     if (branch.end.kind !== 'budget') continue
     const message = `A branch of oscillations could not be followed beyond ${symbolOf(frame)} = ${Number(branch.end.p.toPrecision(4))}.`
@@ -101,11 +103,13 @@ function completed(
   const high = beyondEnd(space, lists, branches, onsets, card.high, line, 1)
   const cycles = besideCycles(branches, line)
   const steady = merged([...low.steady, ...high.steady].map((each) => clipped(each, line)).filter(isStretch))
+  const irregular = [low.irregular, high.irregular].filter((each) => each !== null)
   const coexisting = [
     ...cycles.map((each) => ({ ...inUnits(frame, each), with: 'cycle' })),
     ...steady.map((each) => ({ ...inUnits(frame, each), with: 'steady' })),
+    ...irregular.map((each) => ({ ...inUnits(frame, each), with: 'irregular' })),
   ].sort((a, b) => a.from - b.from)
-  const kicks = toleratedKicks(space, branches, lists.paths, line, merged([...cycles, ...steady]))
+  const kicks = toleratedKicks(space, branches, lists.paths, line, merged([...cycles, ...steady, ...irregular]))
   return { ...card, low: low.end, high: high.end, coexisting, toleratedKick: kicks }
 }
 
@@ -113,6 +117,8 @@ interface Beyond {
   readonly end: RunningWindow['low']
   /** Where the other steady state coexists (controls over the range). */
   readonly steady: Stretch1[]
+  /** Where the irregular motion goes on beside the steady state. */
+  readonly irregular: Stretch1 | null
 }
 
 function beyondEnd(
@@ -125,11 +131,11 @@ function beyondEnd(
   side: 1 | -1,
 ): Beyond {
   const { frame } = space
-  if (end.kind === 'range-end' || end.kind === 'box-left') return { end, steady: [] }
+  if (end.kind === 'range-end' || end.kind === 'box-left') return { end, steady: [], irregular: null }
   const z = side === 1 ? line.ends.high : line.ends.low
   const edge = side === 1 ? line.to : line.from
   const jump = jumpPast(space, lists, branches, end, z, side)
-  if (!jump) return { end, steady: [] }
+  if (!jump) return { end, steady: [], irregular: null }
   addFoundBranch(space, branches, onsets, jump)
   const jumpTo =
     jump.to.kind === 'cycle' ? { kind: jump.to.kind, amplitude: jump.to.at.measures.amplitude } : { kind: jump.to.kind }
@@ -139,7 +145,10 @@ function beyondEnd(
   const told = back === null ? { ...end, jumpTo } : { ...end, jumpTo, returnAt: back * unit }
   const overlap = jump.to.kind === 'steady' && back !== null && side * (edge - back) > 0
   const steady = overlap ? [{ from: Math.min(edge, back), to: Math.max(edge, back) }] : []
-  return { end: told, steady }
+  const other = side === 1 ? line.from : line.to
+  const irregular =
+    jump.to.kind === 'irregular' ? besideIrregular(space, lists.paths, edge, other, side, jump.to.state) : null
+  return { end: told, steady, irregular }
 }
 
 /** A cycle that was jumped to and lies on no branch yet brings its own. */

@@ -1,7 +1,7 @@
 import type { CycleAt } from './branch-point.ts'
 import { cycleAt } from './branch-point.ts'
-import { type Cycle, extentOf, sizeOf } from './cycle.ts'
-import { type CycleSpace, controlRow, correctCycle } from './cycle-system.ts'
+import { type Cycle, extentOf, onMesh, sizeOf } from './cycle.ts'
+import { type CycleSpace, controlRow, correctCycle, type Solution } from './cycle-system.ts'
 import { firstSize, startAtOnset } from './start-at-onset.ts'
 import {
   type CycleEnd,
@@ -42,7 +42,7 @@ export function growFromOnsets(
       lost.push(onset)
       continue
     }
-    const { points, end } = walkCycles(space, first, { onsets, smallest: firstSize })
+    const { points, end } = walkCycles(space, first.at, { onsets, smallest: first.size })
     if (end.onset !== undefined) reached.add(end.onset)
     branches.push({ hopf: onset.index, points, start: null, end })
   }
@@ -85,24 +85,37 @@ export interface CyclePosition {
 
 /**
  * The place on the branches of a cycle, or null. The branch itself is computed at this control value from its points
- * nearby; it is the same cycle where the period agrees within 1e-4 and every state's extent within 1 % of the cycle's size.
+ * nearby; it is the same cycle where the period agrees within 0.1 % and every state's extent within 2 % of the cycle's size.
  */
 export function positionOf(space: CycleSpace, branches: readonly CycleBranch[], at: CycleAt): CyclePosition | null {
   const { p, period } = at.solution.cycle
   for (const branch of branches) {
-    for (const { segment, value, nearer } of crossings(branch, p)) {
+    for (const { segment, value } of crossings(branch, p)) {
       if (Math.abs(value.period / period - 1) > 0.2) continue
-      const there = { ...nearer.solution.cycle, p }
-      const solution = correctCycle(space, there, nearer.solution.cycle, controlRow(there))
-      if (solution && isSame(space.n, solution.cycle, at.solution.cycle)) return { branch, segment }
+      const there = cycleOn(space, branch, segment, p)
+      if (there && isSame(space.n, there.cycle, at.solution.cycle)) return { branch, segment }
     }
   }
   return null
 }
 
+/** The branch's own cycle at control value p between points `segment` and `segment + 1`. */
+export function cycleOn(space: CycleSpace, { points }: CycleBranch, segment: number, p: number): Solution | null {
+  const a = points[segment]?.at.solution.cycle
+  const b = points[segment + 1]?.at.solution.cycle
+  if (!a || !b || a.p === b.p) return null
+  const s = (p - a.p) / (b.p - a.p)
+  const near = s < 0.5 ? a : b
+  const far = onMesh(s < 0.5 ? b : a, space.n, near.mesh)
+  const share = s < 0.5 ? s : 1 - s
+  const u = near.u.map((value, k) => value + share * ((far.u[k] as number) - value))
+  const guess: Cycle = { mesh: near.mesh, u, period: near.period + share * (far.period - near.period), p }
+  return correctCycle(space, guess, near, controlRow(guess))
+}
+
 function isSame(n: number, a: Cycle, b: Cycle): boolean {
-  if (Math.abs(a.period / b.period - 1) > 1e-4) return false
-  const slack = 0.01 * sizeOf(b, n)
+  if (Math.abs(a.period / b.period - 1) > 1e-3) return false
+  const slack = 0.02 * sizeOf(b, n)
   for (let i = 0; i < n; i++) {
     const [x, y] = [extentOf(a, n, i), extentOf(b, n, i)]
     if (Math.abs(x.low - y.low) > slack || Math.abs(x.high - y.high) > slack) return false

@@ -4,6 +4,7 @@ import type { Frame } from '../frame.ts'
 import { type CycleAt, cycleAt } from './branch-point.ts'
 import { type Cycle, sizeOf } from './cycle.ts'
 import { type CycleSpace, controlRow, correctCycle } from './cycle-system.ts'
+import { remeshed } from './walk-cycles.ts'
 
 /** One accepted step of an integration: time, state and slope, in the model's units. */
 export interface Sample {
@@ -55,7 +56,9 @@ export function cycleFromTrajectory(
   const size = sizeOf(guess, n)
   const solution = correctCycle(space, guess, guess, controlRow(guess), 0.1 * size + 0.1 * Math.sqrt(size) * size)
   if (!solution || sizeOf(solution.cycle, n) < 0.5 * size) return null
-  return cycleAt(frame, solution)
+  const rough = cycleAt(frame, solution)
+  // the trajectory's steps give a mesh that serves; the cycle's own is better
+  return rough && (remeshed(space, rough, 60) ?? rough)
 }
 
 function valuesOn(

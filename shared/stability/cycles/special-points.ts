@@ -1,9 +1,12 @@
 import { type CycleAt, locateOn, type Stretch } from './branch-point.ts'
 import type { CycleSpace } from './cycle-system.ts'
 
-/** A turning point, period doubling or torus point on a stretch of a branch. */
+/**
+ * A turning point, period doubling or torus point on a stretch of a branch, or a point at which a multiplier passes 1
+ * without a turn (another branch of cycles crosses there).
+ */
 export interface Special {
-  readonly kind: 'fold' | 'period-doubling' | 'torus'
+  readonly kind: 'fold' | 'period-doubling' | 'torus' | 'crossing'
   readonly at: CycleAt
   /** Share of the stretch at which it lies. */
   readonly s: number
@@ -21,10 +24,19 @@ function foldRate({ solution }: CycleAt): number {
  * Product of (mu + 1), each factor brought to size one: changes sign where a real multiplier passes -1, and is smooth
  * where two real ones become a pair (whose two factors have a positive product).
  */
-function doublingTest({ solution: { re, im } }: CycleAt): number {
+function doublingTest(at: CycleAt): number {
+  return passageTest(at, -1)
+}
+
+/** The same for a multiplier that passes 1. */
+function crossingTest(at: CycleAt): number {
+  return passageTest(at, 1)
+}
+
+function passageTest({ solution: { re, im } }: CycleAt, where: 1 | -1): number {
   let product = 1
   for (let i = 0; i < re.length; i++) {
-    const x = (re[i] as number) + 1
+    const x = (re[i] as number) - where
     const y = im[i] as number
     product *= (y === 0 ? x : Math.hypot(x, y)) / (1 + Math.hypot(re[i] as number, y))
   }
@@ -57,6 +69,10 @@ function hasDoubling({ solution: { re, im, trivialError } }: CycleAt): boolean {
   return re.some((x, i) => im[i] === 0 && Math.abs(x + 1) < 1e-4)
 }
 
+function hasOne({ solution: { re, im, trivialError } }: CycleAt): boolean {
+  return trivialError <= trusted && re.some((x, i) => im[i] === 0 && Math.abs(x - 1) < 1e-4)
+}
+
 /** A true pair on the unit circle, not two real multipliers with product 1. */
 function hasPairOnCircle({ solution: { re, im, trivialError } }: CycleAt): boolean {
   if (trivialError > trusted) return false
@@ -76,6 +92,10 @@ export function specialsOn(space: CycleSpace, stretch: Stretch): Special[] {
   const found: Special[] = []
   const fold = foldOn(space, stretch)
   if (fold) found.push({ kind: 'fold', ...fold })
+  if (!fold && crossingTest(stretch.a) * crossingTest(stretch.b) < 0) {
+    const crossing = locateOn(space, stretch, crossingTest, 1e-11)
+    if (crossing && hasOne(crossing.at)) found.push({ kind: 'crossing', ...crossing })
+  }
   if (doublingTest(stretch.a) * doublingTest(stretch.b) < 0) {
     const doubling = locateOn(space, stretch, doublingTest, 1e-11)
     if (doubling && hasDoubling(doubling.at)) found.push({ kind: 'period-doubling', ...doubling })

@@ -18,7 +18,7 @@ export const firstSize = 1e-3
  * Null where Newton's method does not converge to a cycle of that size.
  * Source: Kuznetsov, Elements of Applied Bifurcation Theory, section 3.5; Doedel, Keller & Kernevez 1991.
  */
-export function startAtOnset(space: CycleSpace, onset: Onset): CycleAt | null {
+export function startAtOnset(space: CycleSpace, onset: Onset): { at: CycleAt; size: number } | null {
   const { frame, n } = space
   if (!linearise(frame, onset.z)) return null
   const vectors = createEigenvectors(n)
@@ -37,12 +37,12 @@ export function startAtOnset(space: CycleSpace, onset: Onset): CycleAt | null {
   const steady: Cycle = { mesh, u, period: (2 * Math.PI) / onset.omega, p: onset.z[n] as number }
   const raw: Direction = { u: wave, period: 0, p: 0 }
   const tangent = scaledDirection(raw, 1 / Math.sqrt(directionDot(mesh, n, raw, raw)))
-  for (const size of [firstSize, firstSize / 4, firstSize * 4]) {
+  for (const size of [1, 0.1, 0.01, 5].map((share) => share * firstSize)) {
     const flat = moved(steady, tangent, size)
     const reach = frame.model.smooth ? 0.5 * size : 50 * size
     const solution = correctCycle(space, flat, flat, tangent, reach)
     const at = solution && cycleAt(frame, solution)
-    if (at) return at
+    if (at) return { at, size }
   }
   return null
 }

@@ -1,5 +1,5 @@
 import { degree } from '#shared/numerics/gauss-collocation.ts'
-import { equidistributed, errorDensity } from '#shared/numerics/mesh.ts'
+import { equidistributed, errorDensity, valueAt } from '#shared/numerics/mesh.ts'
 import type { Frame } from '../frame.ts'
 import { type CycleAt, cycleAt, pointAtControl, type Stretch, stretchBetween } from './branch-point.ts'
 import { type Cycle, directionDot, moved, onMesh, scaledDirection, sizeOf } from './cycle.ts'
@@ -23,7 +23,7 @@ export interface WalkedPoint {
 
 /** How a branch of cycles ends; `p` is the control over its range. */
 export interface CycleEnd {
-  readonly kind: 'range-end' | 'box-left' | 'onset' | 'homoclinic' | 'closed' | 'budget'
+  readonly kind: 'range-end' | 'box-left' | 'onset' | 'homoclinic' | 'closed' | 'period-doubling' | 'budget'
   readonly p: number
   /** Which onset, where it is one of those given. */
   readonly onset?: number
@@ -84,6 +84,11 @@ export function walkCycles(space: CycleSpace, start: CycleAt, options: WalkOptio
   }
   for (let count = 0; points.length < most && count < 1200; count++) {
     if (frame.budget.spent()) return finish('budget')
+    // the mesh was changed just past the turn of a doubled branch: see below
+    const latest = points[points.length - 1]
+    if (latest?.mark === 'fold' && isDoubled(n, latest.at.solution.cycle)) {
+      return finish('period-doubling', latest.at.solution.cycle.p)
+    }
     const taken = stepFrom(space, current, step)
     if (!taken) {
       step /= 2.5
@@ -104,6 +109,12 @@ export function walkCycles(space: CycleSpace, start: CycleAt, options: WalkOptio
       specials.push(fold)
     }
     const refined = fold ? refinedFold(space, stretch, fold) : null
+    const turn = refined ?? fold?.at
+    if (turn && isDoubled(n, turn.solution.cycle)) {
+      // a branch of doubled period has come to the branch it springs from: beyond, it would retrace itself
+      points.push({ at: turn, mark: null })
+      return finish('period-doubling', turn.solution.cycle.p)
+    }
     if (fold && !refined) {
       const finer = Math.min(mostIntervals, 2 * (current.solution.cycle.mesh.length - 1))
       const again = finer > fewest ? remeshed(space, current, finer) : null
@@ -213,6 +224,20 @@ function transferTo(
   const along = { ...tangent, u: onMesh({ ...cycle, u: tangent.u }, n, mesh).u }
   const solution = correctCycle(space, guess, guess, along)
   return solution && cycleAt(frame, solution)
+}
+
+/** True where a cycle is one of half its period gone round twice. */
+function isDoubled(n: number, cycle: Cycle): boolean {
+  const { mesh, u } = cycle
+  const here = new Float64Array(n)
+  const there = new Float64Array(n)
+  const slack = 0.03 * sizeOf(cycle, n)
+  for (let k = 0; k < 40; k++) {
+    valueAt(mesh, u, n, k / 80, here)
+    valueAt(mesh, u, n, k / 80 + 0.5, there)
+    for (let i = 0; i < n; i++) if (Math.abs((here[i] as number) - (there[i] as number)) > slack) return false
+  }
+  return true
 }
 
 /** Of two points on both sides of a turn the one nearer to it. */

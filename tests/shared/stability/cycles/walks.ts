@@ -1,12 +1,6 @@
 import { createBudget } from '#shared/stability/budget.ts'
-import { type CycleBranch, crossings, growFromOnsets } from '#shared/stability/cycles/cycle-branches.ts'
-import {
-  type CycleSpace,
-  controlRow,
-  correctCycle,
-  createCycleSpace,
-  type Solution,
-} from '#shared/stability/cycles/cycle-system.ts'
+import { type CycleBranch, crossings, cycleOn, growFromOnsets } from '#shared/stability/cycles/cycle-branches.ts'
+import { type CycleSpace, createCycleSpace, type Solution } from '#shared/stability/cycles/cycle-system.ts'
 import { type Measures, measure } from '#shared/stability/cycles/measures.ts'
 import { createFrame, scaled } from '#shared/stability/frame.ts'
 import { compiled, type ShortModel } from '../documents.ts'
@@ -36,9 +30,8 @@ export function cyclesAt(space: CycleSpace, branch: CycleBranch, p: number): Exa
   const { frame, n } = space
   const own = p / (frame.unit[n] as number)
   return crossings(branch, own)
-    .flatMap(({ nearer }) => {
-      const guess = { ...nearer.solution.cycle, p: own }
-      const solution = correctCycle(space, guess, nearer.solution.cycle, controlRow(guess))
+    .flatMap(({ segment }) => {
+      const solution = cycleOn(space, branch, segment, own)
       return solution ? [{ solution, measures: measure(frame, solution.cycle, null) }] : []
     })
     .sort((a, b) => a.measures.amplitude - b.measures.amplitude)
