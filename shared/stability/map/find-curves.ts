@@ -48,6 +48,8 @@ export function findCurves(
     done++
     tell(0.5 + (0.5 * done) / (done + waiting.length))
     if (isKnown(curves, start)) continue
+    // where two branches cross along a whole curve nothing turns
+    if (!('doubleZero' in start) && start.omega === null && !turnsAt(plane, start.z)) continue
     const at = tracerAt(plane, start)
     const vertex = at && startVertex(at.tracer, at.y)
     if (!at || !vertex || gap(at.tracer, vertex.y, start.z) > 1e-5) {
@@ -114,10 +116,9 @@ function startsAt({ kind, curve, specials }: FoundCurve): Start[] {
     const z = pointOf(vertex)
     if (!insidePlane(plane, z)) continue
     if (special === 'double-hopf' && other !== null) starts.push({ z, omega: other })
-    // the zero eigenvalue may as well be that of a branch point: then no turning points pass here
     if (special === 'zero-hopf' || special === 'double-zero') {
       if (kind === 'fold') starts.push(special === 'double-zero' ? { z, doubleZero: true } : { z, omega })
-      else if (turnsAt(plane, z)) starts.push({ z, omega: null })
+      else starts.push({ z, omega: null })
     }
   }
   return starts

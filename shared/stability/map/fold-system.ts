@@ -108,6 +108,7 @@ export function turnsAt(plane: Plane, z: Float64Array): boolean {
   const vectors = foldVectors(plane, z)
   if (!vectors || !linearisePlane(plane, z)) return false
   const { n, width, derivatives } = plane
+  const rounding = 1e-13 * derivatives.reduce((most, value) => Math.max(most, Math.abs(value)), 0)
   return [n, n + 1].some((column) => {
     let push = 0
     let size = 0
@@ -116,6 +117,6 @@ export function turnsAt(plane: Plane, z: Float64Array): boolean {
       push += (vectors.left[i] as number) * entry
       size += entry * entry
     }
-    return Math.abs(push) > 1e-6 * Math.sqrt(size)
+    return Math.abs(push) > Math.max(rounding, 1e-6 * Math.sqrt(size))
   })
 }

@@ -14,8 +14,8 @@ export interface CurveStart {
   readonly omega: number | null
 }
 
-/** Values of each control between its ends at which lines are laid across the plane. */
-const valuesBetween = 9
+/** Values of each control between its ends at which lines are laid across the plane; fewer for large models. */
+const valuesBetween = (n: number): number => (n <= 6 ? 15 : 9)
 
 /** The own value first (where it is in range), then both ends, then values between. */
 function valuesOf(own: number, low: number, high: number, count: number): number[] {
@@ -35,8 +35,8 @@ export function findCurveStarts(
   const { frame, n, second } = plane
   const { model } = frame
   const budget = weighted(frame.budget, Math.ceil(n / 4))
-  const firstValues = valuesOf(frame.own, frame.low, frame.high, valuesBetween)
-  const secondValues = valuesOf(plane.own, plane.low, plane.high, valuesBetween)
+  const firstValues = valuesOf(frame.own, frame.low, frame.high, valuesBetween(n))
+  const secondValues = valuesOf(plane.own, plane.low, plane.high, valuesBetween(n))
   // searches with proof grow steeply with the number of states
   const searched = valuesOf(plane.own, plane.low, plane.high, n <= 4 ? 7 : n <= 8 ? 3 : 1)
   const starts: CurveStart[] = []

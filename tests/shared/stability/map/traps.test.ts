@@ -66,6 +66,32 @@ describe('what is no onset curve, and no changeover', () => {
     expect(map.curves.filter(({ kind }) => kind === 'fold')).toEqual([])
   })
 
+  test('a line of exchanges of stability is no curve of turning points; onsets pass it on both branches', () => {
+    // z' = z (p - z): branches z = 0 and z = p cross at p = 0 whatever s is; onsets s + z = 0 on each, with omega 2
+    const { map } = mapOf(
+      planeDocument({
+        equations: 'q=x^2+y^2\ng=s+z-q\ndx/dt = g*x - 2*y\ndy/dt = 2*x + g*y\ndz/dt = z*(p-z) - 0.5*q',
+        control: { p: [0.5, -1, 1] },
+        second: { s: [-0.9, -1, 1] },
+        states: { x: box, y: box, z: [-2, 2] },
+        observed: 'x',
+      }),
+    )
+    expect(map.curves.map(({ kind }) => kind)).toEqual(['onset', 'onset'])
+    for (const { points } of map.curves) {
+      expect(largest(points, ({ p, s }) => s * (s + p))).toBeLessThan(1e-11)
+      expect(Math.abs((points[0]?.p ?? 0) - (points.at(-1)?.p ?? 0))).toBeCloseTo(2, 12)
+    }
+    // q drives z alone, by q/(2p) on z = 0 and -q/(2p) on z = p: cubics -1 + 1/(2p) and -1 - 1/(2p), zero at
+    // p = 1/2 and p = -1/2; at p = 0, where they are infinite, stands a zero-Hopf point and no changeover
+    expect(map.points.filter(({ kind }) => kind === 'zero-hopf')).toEqual([
+      { kind: 'zero-hopf', p: expect.closeTo(0, 9), s: expect.closeTo(0, 9), omega: expect.closeTo(2, 9) },
+    ])
+    const changes = map.points.filter(({ kind }) => kind === 'changeover')
+    expect(changes.map(({ p }) => p)).toEqual([expect.closeTo(0.5, 9), expect.closeTo(-0.5, 9)])
+    expect(changes.map(({ s }) => s)).toEqual([expect.closeTo(0, 9), expect.closeTo(0.5, 9)])
+  })
+
   test('two equal pairs on the axis together: a curve whose points are not decided', () => {
     const { map } = mapOf(
       planeDocument({
@@ -97,6 +123,48 @@ describe('what is no onset curve, and no changeover', () => {
     )
     expect(onlyCurve(map, 'onset').points.every(({ verdict }) => verdict === 'undetermined')).toBe(true)
     expect(map.points).toEqual([])
+  })
+})
+
+describe('scales', () => {
+  test('controls and states in units of 1e-9, 1e7 and 1e-6, rates of 1e6: vertical line and changeover', () => {
+    // growth (p - 0.25e-9) 1e15, cubic -(s - 0.5e7) 1e11 per square of x, omega 1e6
+    const { map } = mapOf(
+      planeDocument({
+        equations:
+          'm = (p - 0.25e-9)*1e9\nk = (s - 0.5e7)*1e5\nq = x^2 + y^2\n' +
+          'dx/dt = 1e6*(m*x - y - k*q*x)\ndy/dt = 1e6*(x + m*y - k*q*y)',
+        control: { p: [0, 0, 1e-9] },
+        second: { s: [3e6, 0, 1e7] },
+        states: { x: [-1e-6, 1e-6], y: [-1e-6, 1e-6] },
+        observed: 'x',
+      }),
+    )
+    const { points } = onlyCurve(map, 'onset')
+    expect(largest(points, ({ p }) => (p - 0.25e-9) / 1e-9)).toBeLessThan(1e-12)
+    expect(largest(points, ({ omega = 0 }) => omega / 1e6 - 1)).toBeLessThan(1e-12)
+    for (const { s, verdict } of points) {
+      if (Math.abs(s - 5e6) > 1) expect(verdict).toBe(s < 5e6 ? 'hard' : 'soft')
+    }
+    expect(map.points.map(({ kind }) => kind)).toEqual(['changeover'])
+    expect((map.points[0]?.s ?? 0) / 5e6).toBeCloseTo(1, 10)
+  })
+
+  test('rates from 1e-6 to 1e6: the onset p = s of the slow pair, to 1e-5', () => {
+    // x follows y within a microsecond, w follows x in 1e6 time units; x in place of y delays by 1e-6, which moves p by as much
+    const { map } = mapOf(
+      planeDocument({
+        equations:
+          'dx/dt = 1e6*(y-x)\ndy/dt = (p-s)*x - z - y*(y^2+z^2)\ndz/dt = y + (p-s)*z - z*(y^2+z^2)\ndw/dt = 1e-6*(x-w)',
+        control: { p: [0.1, -1, 1] },
+        second: { s: [0.3, -1, 1] },
+        states: { x: box, y: box, z: box, w: box },
+        observed: 'y',
+      }),
+    )
+    const { points } = onlyCurve(map, 'onset')
+    expect(largest(points, ({ p, s }) => p - s)).toBeLessThan(1e-5)
+    expect(points.every(({ verdict, operating }) => verdict === 'soft' && operating)).toBe(true)
   })
 })
 
