@@ -10,7 +10,7 @@ export type CallOptions<P extends z.ZodType, Q extends z.ZodType, B extends z.Zo
   query?: Partial<z.output<Q>>
 } & Part<'body', z.input<B>> & {
     signal?: AbortSignal
-    /** The ETag the change is meant for; without it an endpoint with `ifMatch` answers 428. */
+    /** The ETag the change is meant for, as bodies carry it (without quotes); without it an endpoint with `ifMatch` answers 428. */
     ifMatch?: string
     /** The same key on a repeated request does the act once. */
     idempotencyKey?: string
@@ -28,7 +28,8 @@ export async function call<P extends z.ZodType, Q extends z.ZodType, B extends z
 ): Promise<z.output<R>> {
   const { params, query, body, signal, ifMatch, idempotencyKey } = options as LooseOptions
   const headers = new Headers({ Accept: 'application/json, application/problem+json' })
-  if (ifMatch !== undefined) headers.set('If-Match', ifMatch)
+  // An entity tag stands in quotes (RFC 9110 8.8.3); bodies carry it without.
+  if (ifMatch !== undefined) headers.set('If-Match', `"${ifMatch}"`)
   if (idempotencyKey !== undefined) headers.set('Idempotency-Key', idempotencyKey)
   if (body !== undefined) headers.set('Content-Type', 'application/json')
 

@@ -31,14 +31,13 @@ export function RemovePage({ page }: { page: Page }) {
             look="first"
             pending={remove.isPending}
             onClick={() =>
-              remove.mutate(
-                { etag: page.etag },
-                {
-                  onSuccess: () => {
-                    announce(`Removed: ${page.code}`)
-                    navigate('/')
-                  },
+              remove.mutateAsync({ etag: page.etag }).then(
+                () => {
+                  announce(`Removed: ${page.code}`)
+                  navigate('/')
                 },
+                // The refusal stands in the mutation's own error, from where it is shown.
+                () => {},
               )
             }
           >

@@ -72,7 +72,7 @@ function Review({ page, revision, inForce }: { page: Page; revision: Revision; i
 function Columns(props: { page: Page; revision: Revision; compared: Comparison; open: boolean }) {
   const { page, revision, compared, open } = props
   return (
-    <div className="grid grid-cols-1 items-start gap-4 bench:grid-cols-[minmax(0,27rem)_minmax(0,1fr)_20rem]">
+    <div className="grid grid-cols-1 items-start gap-4 bench:grid-cols-[minmax(0,21rem)_minmax(0,1fr)_17rem] min-[85rem]:grid-cols-[minmax(0,27rem)_minmax(0,1fr)_20rem]">
       <div className="grid min-w-0 content-start gap-4">
         <EquationsAndTables compared={compared} />
         <section aria-labelledby="review-sources" className="sheet p-4">

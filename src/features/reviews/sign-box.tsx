@@ -18,6 +18,9 @@ export interface SignBoxProps {
   onSettled: (what: 'Approved' | 'Returned with remarks') => void
 }
 
+// A refusal stands in the mutation's own error, from where it is shown.
+const shown = () => {}
+
 /**
  * Where a revision is settled: returned with remarks, or, on a screen that shows it in full, approved with the password. A
  * phone says at its foot why not there (phone-foot.tsx).
@@ -27,6 +30,7 @@ export function SignBox({ code, revision, whyNot, mayReturn, targets, remarks, o
   const approve = useApproveRevision(code, revision.mark)
   const giveBack = useReturnRevision(code, revision.mark)
   const { etag } = revision
+  // Promises, not the callbacks of mutate: what was settled is read again first, and this box is gone by then.
   if (phone && !mayReturn) return null
   return (
     <section aria-label="Settle this review" className="sheet grid content-start gap-5 p-4">
@@ -37,15 +41,10 @@ export function SignBox({ code, revision, whyNot, mayReturn, targets, remarks, o
           pending={giveBack.isPending}
           fault={<RefusedAct error={giveBack.error} code={code} notDone="Nothing is returned." />}
           onReturn={() =>
-            giveBack.mutate(
-              { etag, remarks: toSend(remarks.all) },
-              {
-                onSuccess: () => {
-                  remarks.clear()
-                  onSettled('Returned with remarks')
-                },
-              },
-            )
+            giveBack.mutateAsync({ etag, remarks: toSend(remarks.all) }).then(() => {
+              remarks.clear()
+              onSettled('Returned with remarks')
+            }, shown)
           }
         />
       )}
@@ -56,7 +55,10 @@ export function SignBox({ code, revision, whyNot, mayReturn, targets, remarks, o
           pending={approve.isPending}
           fault={<RefusedAct error={approve.error} code={code} notDone="Nothing is signed." />}
           onApprove={(password, settled) =>
-            approve.mutate({ password, etag }, { onSuccess: () => onSettled('Approved'), onSettled: settled })
+            approve
+              .mutateAsync({ password, etag })
+              .then(() => onSettled('Approved'), shown)
+              .finally(settled)
           }
         />
       )}

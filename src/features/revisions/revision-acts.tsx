@@ -44,18 +44,16 @@ export function SendDialog({ code, generation, open, onClose, onSent }: SendDial
   const key = useRef(newIdempotencyKey())
   const send = useSendForReview(code)
   const submit = () =>
-    send.mutate(
-      { summary: summary.trim(), generation, key: key.current },
-      {
-        onSuccess: (revision) => {
-          key.current = newIdempotencyKey()
-          setSummary('')
-          onSent(revision)
-        },
-        // A refused try made nothing; the next one is another request.
-        onError: () => {
-          key.current = newIdempotencyKey()
-        },
+    // A promise, not the callbacks of mutate: the page is read again first, and this dialog may be gone by then.
+    send.mutateAsync({ summary: summary.trim(), generation, key: key.current }).then(
+      (revision) => {
+        key.current = newIdempotencyKey()
+        setSummary('')
+        onSent(revision)
+      },
+      // A refused try made nothing; the next one is another request.
+      () => {
+        key.current = newIdempotencyKey()
       },
     )
   return (
