@@ -20,11 +20,17 @@ export function RevisionTriangle({ mark, size = 32 }: { mark: string; size?: num
   )
 }
 
-/** The small triangle in the margin of a line or a parameter that changed since the revision in force. */
+/** The small triangle in the margin of a line or a parameter that changed since the revision in force. `label` is empty where the text beside it says so already. */
 export function ChangeTriangle({ mark, label }: { mark: string; label: string }) {
   const shown = mark.split('.').slice(0, 2).join('.')
   return (
-    <svg viewBox="0 0 34 30" width="22" height="19.4" role="img" aria-label={label} className="shrink-0">
+    <svg
+      viewBox="0 0 34 30"
+      width="22"
+      height="19.4"
+      {...(label === '' ? { 'aria-hidden': true } : { role: 'img', 'aria-label': label })}
+      className="shrink-0"
+    >
       <path d="M17 2 32.2 28.2H1.8z" fill="none" stroke="currentColor" strokeWidth="2" strokeLinejoin="round" />
       <text
         x="17"
