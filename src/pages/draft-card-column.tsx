@@ -47,7 +47,8 @@ export function DraftCardColumn({
   }, [earlier, shown])
   const older = errors.length > 0 || (live.failure !== null && live.older)
   return (
-    <div className="min-w-0">
+    // The card stays in sight while somebody types far down in the tables. Its margin keeps the sheet's shadow.
+    <div className="min-w-0 bench:sticky bench:top-2 bench:-m-2 bench:max-h-[calc(100dvh-1rem)] bench:overflow-y-auto bench:p-2">
       <StabilityCardView
         document={shown?.document ?? null}
         card={shown?.card ?? null}
@@ -85,7 +86,7 @@ function RunProgress({ progress, onStop }: { progress: CardState['progress']; on
   if (!progress) return null
   const words = progressWords(progress)
   return (
-    <div className="sticky bottom-2 z-10 mx-4 -mt-16 flex min-h-14 items-center gap-3 rounded-control border-[1.5px] border-ink bg-sheet px-3 py-1.5">
+    <div className="sticky bottom-2 z-10 mx-4 -mt-14 flex min-h-14 items-center gap-3 rounded-control border-[1.5px] border-ink bg-sheet px-3 py-1.5">
       <div className="grid min-w-0 flex-1 gap-0.5">
         <span className="text-note">{words}</span>
         <PencilLine label={words} share={progress.share} />

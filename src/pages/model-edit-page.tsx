@@ -13,6 +13,7 @@ import { DraftBand, isOpenToEdits, SaveState } from '#src/features/editor/save-s
 import { useConnectionState, useDraftConnection } from '#src/features/editor/use-draft-connection.ts'
 import { useDraftContent } from '#src/features/editor/use-draft-content.ts'
 import { ModelHead } from '#src/features/revisions/model-head.tsx'
+import { VerdictBar } from '#src/features/stability-card/verdict-bar.tsx'
 import { useLiveCard } from '#src/workers/use-live-card.ts'
 import { DraftCardColumn } from './draft-card-column.tsx'
 import { DraftModelColumn } from './draft-model-column.tsx'
@@ -82,7 +83,16 @@ function Editing({ page, connection, onReload }: { page: Page; connection: Draft
       <DraftBand connection={connection} onReload={onReload} renew={renew} />
       <KeptLines person={viewer} page={page.id} />
       {!state.synced && state.phase !== 'refused' && <PencilLine label="Opening the draft" />}
-      <div className="grid grid-cols-1 items-start gap-4 bench:grid-cols-[minmax(0,432px)_minmax(0,1fr)] wide:grid-cols-[480px_minmax(0,1fr)]">
+      {live.card && (
+        <VerdictBar
+          document={live.card.document}
+          card={live.card.card}
+          older={live.older && !live.computing}
+          className="sheet sticky top-0 z-20 border-b border-rule bench:hidden"
+        />
+      )}
+      {/* What gets the focus is not to stand under the bar. */}
+      <div className="grid grid-cols-1 items-start gap-4 max-bench:[&_:is(input,select,textarea,button,[role=slider])]:scroll-mt-16 bench:grid-cols-[minmax(0,432px)_minmax(0,1fr)] wide:grid-cols-[480px_minmax(0,1fr)]">
         <DraftModelColumn connection={connection} live={live} readOnly={readOnly} earlier={earlier} />
         <DraftCardColumn connection={connection} live={live} mayEdit={!readOnly} earlier={earlier} onStop={stop} />
       </div>

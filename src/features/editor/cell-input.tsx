@@ -60,7 +60,7 @@ export function CellInput({
         }
       }}
       className={classes(
-        'min-h-7 w-full min-w-0 rounded-control border bg-transparent px-1.5 text-note max-bench:min-h-11',
+        'min-h-7 w-full min-w-0 rounded-control border bg-transparent px-1.5 text-note max-bench:min-h-11 max-tablet:px-0.5',
         fault ? 'border-fault decoration-fault underline decoration-wavy' : 'border-transparent',
         readOnly ? 'text-ink-2' : 'hover:border-line focus:border-line focus:bg-well',
         figures && 'figures',

@@ -33,7 +33,7 @@ class ChangeMarker extends GutterMarker {
     const set = (element: Element, attributes: Record<string, string>) => {
       for (const [name, value] of Object.entries(attributes)) element.setAttribute(name, value)
     }
-    set(triangle, { viewBox: '0 0 34 30', width: '22', height: '19.4', role: 'img', 'aria-label': this.words })
+    set(triangle, { viewBox: '0 0 34 30', width: '20', height: '17.6', role: 'img', 'aria-label': this.words })
     const title = document.createElementNS(svg, 'title')
     title.textContent = this.words
     const edge = document.createElementNS(svg, 'path')

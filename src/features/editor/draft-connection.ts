@@ -1,4 +1,4 @@
-import { diffLines } from 'diff'
+import { diffArrays } from 'diff'
 import * as decoding from 'lib0/decoding'
 import type { Awareness } from 'y-protocols/awareness'
 import { WebsocketProvider } from 'y-websocket'
@@ -261,9 +261,9 @@ function reasonOf(event: CloseEvent): string {
 }
 
 function editsBetween(before: DraftContent, after: DraftContent): UnsavedEdits {
-  const lines = diffLines(before.equations, after.equations)
+  const lines = diffArrays(before.equations.split('\n'), after.equations.split('\n'))
     .filter((part) => part.added)
-    .flatMap((part) => part.value.split('\n'))
+    .flatMap((part) => part.value)
     .filter((line) => line.trim() !== '')
   const cells: UnsavedEdits['cells'] = []
   for (const table of ['parameters', 'states'] as const) {

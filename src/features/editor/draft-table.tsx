@@ -35,27 +35,34 @@ export interface DraftTableProps<Cell extends string> {
   /** What stands in the margin of a row. */
   margin?: (row: Row<Cell>, name: string) => ReactNode
   empty?: string
+  /** How cells are filled in, where that is not plain. */
+  note?: string
 }
 
 /** A co-edited table: two lines a row, each cell in the shared document, the row's faults under it. */
 export function DraftTable<Cell extends string>(props: DraftTableProps<Cell>) {
-  const { caption, table, noun, rows, columns, readOnly, onAdd, empty } = props
+  const { caption, table, noun, rows, columns, readOnly, onAdd, empty, note } = props
   return (
     <div data-place={table}>
       <table className="w-full table-fixed border-collapse">
         <caption className="sr-only">{caption}</caption>
         <thead>
           <tr>
-            {columns.map(({ cell, label, className }) => (
+            {columns.map(({ cell, label, className, align = 'left' }) => (
               <th
                 key={cell}
                 scope="col"
-                className={classes('px-1.5 py-1 text-left text-label font-[400] text-ink-3', className)}
+                className={classes(
+                  'px-1.5 py-1 text-label font-[400] text-ink-3 max-tablet:px-1',
+                  align === 'right' ? 'text-right' : 'text-left',
+                  className,
+                )}
               >
                 {label}
               </th>
             ))}
-            <th className="w-9 max-bench:w-11">
+            {/* On a phone the cells need the room: there it stands in the second line. */}
+            <th className="w-9 max-bench:w-11 max-tablet:hidden">
               <span className="sr-only">Remove</span>
             </th>
           </tr>
@@ -65,6 +72,7 @@ export function DraftTable<Cell extends string>(props: DraftTableProps<Cell>) {
         ))}
       </table>
       {rows.length === 0 && empty && <p className="px-1.5 py-2 text-note text-ink-2">{empty}</p>}
+      {!readOnly && note && rows.length > 0 && <p className="px-1.5 pt-2 text-note text-ink-2">{note}</p>}
       {!readOnly && (
         <Button look="quiet" className="mt-1" icon={<Plus aria-hidden className="size-4" />} onClick={onAdd}>
           Add a {noun}
@@ -90,6 +98,16 @@ function DraftRow<Cell extends string>(props: DraftTableProps<Cell> & { row: Row
       onChange={(value) => onCell(row.id, cell, value)}
     />
   )
+  const remove = !readOnly && (
+    <button
+      type="button"
+      aria-label={`Remove ${name}`}
+      onClick={() => onRemove(row.id)}
+      className="inline-grid size-7 place-items-center rounded-control text-ink-3 hover:bg-well hover:text-ink max-bench:size-11"
+    >
+      <X aria-hidden className="size-3.5" />
+    </button>
+  )
   return (
     <tbody className={classes('border-b border-rule', lit?.(row) && 'bg-pencil-tint')}>
       <tr>
@@ -99,18 +117,7 @@ function DraftRow<Cell extends string>(props: DraftTableProps<Cell> & { row: Row
             {cellOf(column)}
           </td>
         ))}
-        <td className="text-right">
-          {!readOnly && (
-            <button
-              type="button"
-              aria-label={`Remove ${name}`}
-              onClick={() => onRemove(row.id)}
-              className="inline-grid size-7 place-items-center rounded-control text-ink-3 hover:bg-well hover:text-ink max-bench:size-11"
-            >
-              <X aria-hidden className="size-3.5" />
-            </button>
-          )}
-        </td>
+        <td className="text-right max-tablet:hidden">{remove}</td>
       </tr>
       <tr>
         <td colSpan={columns.length + 1} className="px-0.5 pb-1">
@@ -120,6 +127,7 @@ function DraftRow<Cell extends string>(props: DraftTableProps<Cell> & { row: Row
                 {cellOf(column)}
               </div>
             ))}
+            <span className="shrink-0 tablet:hidden">{remove}</span>
           </div>
           {faultsOfRow(faults, path).map((fault) => (
             <p key={fault} className="px-1.5 text-note font-[620] text-fault">

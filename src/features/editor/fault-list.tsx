@@ -16,8 +16,8 @@ export function FaultList({ faults, onGo }: { faults: readonly ModelError[]; onG
   return (
     <ul aria-label="Faults of the model" className="grid gap-1 border-t border-rule px-4 py-3">
       {faults.map(({ code, message, path }) => (
-        <li key={`${path} ${code} ${message}`} className="flex items-start gap-1.5 text-note font-[620] text-fault">
-          <CircleAlert aria-hidden className="mt-1 size-4 shrink-0" />
+        <li key={`${path} ${code} ${message}`} className="flex items-center gap-1.5 text-note font-[620] text-fault">
+          <CircleAlert aria-hidden className="size-4 shrink-0" />
           {path === undefined ? (
             <span>{message}</span>
           ) : (

@@ -31,7 +31,7 @@ const below: DraftColumn<ParameterCell>[] = [
     label: 'Uncertainty',
     figures: false,
     className: 'w-[40%] shrink-0',
-    placeholder: 'such as normal 0.02',
+    placeholder: 'uncertainty',
   },
 ]
 
@@ -59,6 +59,7 @@ export function ParameterTable({ doc, content, readOnly, faults, changed }: Para
           </span>
         )
       }
+      note="Uncertainty: normal 0.02 (a standard deviation) or uniform 0.5 to 2."
       empty="No parameter yet. The control parameter is one of them."
     />
   )

@@ -65,7 +65,11 @@ export function StabilityCardView(props: StabilityCardViewProps) {
           <h2 className="text-title text-ink-2">The verdict stands here</h2>
           <EmptyDrawing
             words={
-              state === 'computing' ? 'The first run is under way' : 'two lines of equations are enough to fill it'
+              state === 'computing'
+                ? 'The first run is under way'
+                : errors.length > 0
+                  ? 'it is computed as soon as the faults are settled'
+                  : 'two lines of equations are enough to fill it'
             }
           />
         </>
