@@ -194,6 +194,10 @@ export const stabilityCard = z.object({
         z.object({
           kind: z.enum(['onset', 'fold', 'cycle-fold']),
           closed: z.boolean(),
+          /**
+           * Within both ranges; where a curve runs along an edge, up to a thousandth of the range beyond it. Of a closed
+           * curve the first point is not repeated. A point that was not judged has no verdict.
+           */
           points: z.array(
             z.object({
               p: finite,
