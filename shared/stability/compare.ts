@@ -17,6 +17,8 @@ export interface CardDifference {
   was: Value
   now: Value
   unit?: string
+  /** Which way a position is rounded for people: to its safe side. Absent: to the nearest. */
+  rounding?: 'down' | 'up'
   /** What this difference alone does to the mark. */
   change: Exclude<MarkLevel, 'patch'>
 }
@@ -140,12 +142,26 @@ function compareOnsetKinds({ first, second }: Paired, major: Tell): void {
 
 /** Collects numbers that moved: `tolerance` in the number's own unit. */
 function collector(differences: CardDifference[]) {
-  const push = (what: string, was: number | null, now: number | null, unit: string) =>
-    differences.push({ what, was, now, ...(unit === '' ? {} : { unit }), change: 'minor' })
+  const push = (what: string, was: number | null, now: number | null, unit: string, rounding?: 'down' | 'up') =>
+    differences.push({
+      what,
+      was,
+      now,
+      ...(unit === '' ? {} : { unit }),
+      ...(rounding === undefined ? {} : { rounding }),
+      change: 'minor',
+    })
   return {
-    number(what: string, was: number | null, now: number | null, tolerance: number, unit = '') {
+    number(
+      what: string,
+      was: number | null,
+      now: number | null,
+      tolerance: number,
+      unit = '',
+      rounding?: 'down' | 'up',
+    ) {
       const moved = was === null || now === null ? was !== now : Math.abs(now - was) > tolerance
-      if (moved) push(what, was, now, unit)
+      if (moved) push(what, was, now, unit, rounding)
     },
     /** Points of one kind along the control. */
     positions(thing: string, was: readonly number[], now: readonly number[], tolerance: number, unit: string) {
@@ -176,7 +192,9 @@ function compareNumbers(before: Judged, after: Judged, { first, second, range }:
     const now = second[index]
     if (!now || first.length !== second.length) break
     const name = nameOf('onset', index, first.length)
-    tell.number(`Position of ${name}`, was.p, now.p, onControl, control.unit)
+    // Down where stability is lost as the control rises (the danger lies above), up where as it falls.
+    const safe = was.crossing < 0 ? 'up' : 'down'
+    tell.number(`Position of ${name}`, was.p, now.p, onControl, control.unit, safe)
     const frequencyUnit = timeUnit === '' ? '' : `rad/${timeUnit}`
     tell.number(`Frequency at ${name}`, was.omega, now.omega, relative(was.omega, now.omega), frequencyUnit)
     tell.number(`Crossing rate at ${name}`, was.crossing, now.crossing, relative(was.crossing, now.crossing))
@@ -198,8 +216,10 @@ function compareNumbers(before: Judged, after: Judged, { first, second, range }:
       now.from,
       Math.max(onControl, relative(was.from, now.from)),
       control.unit,
+      'up',
     )
-    tell.number('Steady running to', was.to, now.to, Math.max(onControl, relative(was.to, now.to)), control.unit)
+    const toTolerance = Math.max(onControl, relative(was.to, now.to))
+    tell.number('Steady running to', was.to, now.to, toTolerance, control.unit, 'down')
   }
   if (controlOf(before.document).value === control.value) compareSteadyStates(before, after, tell)
   return differences

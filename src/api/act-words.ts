@@ -18,6 +18,13 @@ export function actWords(error: Error, notDone: string): ActWords {
   switch (code) {
     case 'changed':
       return { headline: 'It changed while you were reading', text: notDone, first: 'read-again' }
+    case 'may-not':
+      // What is allowed depends on the state of the page: settled by somebody else, nothing is left to settle.
+      return {
+        headline: error.message,
+        text: `${notDone} It may have been settled meanwhile.`,
+        first: 'read-again',
+      }
     case 'already-settled':
       return {
         headline: 'Already settled by somebody else',

@@ -28,7 +28,9 @@ export function ChangeTriangle({ mark, label }: { mark: string; label: string })
       viewBox="0 0 34 30"
       width="22"
       height="19.4"
-      {...(label === '' ? { 'aria-hidden': true } : { role: 'img', 'aria-label': label })}
+      role="img"
+      aria-label={label}
+      aria-hidden={label === ''}
       className="shrink-0"
     >
       <path d="M17 2 32.2 28.2H1.8z" fill="none" stroke="currentColor" strokeWidth="2" strokeLinejoin="round" />

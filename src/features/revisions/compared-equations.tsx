@@ -36,7 +36,7 @@ export function ComparedEquations({ before, after }: { before: ComparedModel | n
         role="group"
         aria-label="Equation block"
         tabIndex={0}
-        className="grid gap-1.5 overflow-x-auto border-t border-rule bg-well px-4 py-3"
+        className="grid grid-cols-1 gap-1.5 overflow-x-auto border-t border-rule bg-well px-4 py-3"
       >
         {changes.map((change) =>
           change.kind === 'same' ? (
@@ -60,7 +60,7 @@ function Changed({
   after: ComparedModel
 }) {
   return (
-    <div data-change tabIndex={-1} className="relative my-1">
+    <div data-change tabIndex={-1} className="relative my-1 min-w-fit">
       <RevisionCloud label={`Changed at line ${change.at}`}>
         <div className="grid grid-cols-[2.5rem_1fr] items-baseline gap-x-2 gap-y-2 pr-6">
           {change.was.length > 0 && (
@@ -80,7 +80,7 @@ function Changed({
         </div>
       </RevisionCloud>
       <span className="absolute right-0 bottom-3 bg-well">
-        <ChangeTriangle mark={after.mark} label={`Changed with revision ${after.mark}`} />
+        <ChangeTriangle mark={after.mark} label="" />
       </span>
     </div>
   )
@@ -100,7 +100,7 @@ function Lines({ lines, from, typeset }: { lines: readonly string[]; from: numbe
             ) : text.trim().startsWith('#') ? (
               <span className="text-note text-ink-2">{text.replace(/^\s*#\s?/, '')}</span>
             ) : (
-              <span className="flex min-h-7 items-baseline gap-3 whitespace-nowrap">
+              <span className="flex min-h-7 flex-wrap items-baseline gap-x-3">
                 <Formula tex={shown?.tex ?? null} text={text} />
                 {shown?.comment && <span className="text-note text-ink-2">{shown.comment}</span>}
               </span>

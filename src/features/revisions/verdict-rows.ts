@@ -85,11 +85,12 @@ export function consequenceNote(before: Judged, after: Judged): string | null {
  * Both sides of a difference with as many digits as tell them apart, four at least: two numbers that differ never read
  * alike.
  */
-export function differenceTexts({ was, now, unit }: CardDifference): [string, string] {
+export function differenceTexts({ was, now, unit, rounding }: CardDifference): [string, string] {
   const text = (value: CardDifference['was'], digits: number) => {
     if (value === null) return 'not there'
     if (typeof value === 'string') return value
-    const figure = Number.isInteger(value) && Math.abs(value) < 1000 ? String(value) : readerNumber(value, { digits })
+    const figure =
+      Number.isInteger(value) && Math.abs(value) < 1000 ? String(value) : readerNumber(value, { digits, rounding })
     return unit && unit !== '1' ? `${figure} ${unit}` : figure
   }
   for (let digits = 4; digits < 15; digits++) {

@@ -114,7 +114,7 @@ describe('a comparison of two cards', () => {
     const moved = compare({}, withOnsets(onset({ p: 5 + 1.1e-5 })))
     expect(moved.level).toBe('minor')
     expect(moved.differences).toEqual([
-      { what: 'Position of the onset', was: 5, now: 5 + 1.1e-5, unit: 'm/s', change: 'minor' },
+      { what: 'Position of the onset', was: 5, now: 5 + 1.1e-5, unit: 'm/s', rounding: 'down', change: 'minor' },
     ])
   })
 

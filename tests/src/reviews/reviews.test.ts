@@ -53,6 +53,14 @@ describe('refused acts', () => {
     expect(words('not-signed-in')).toMatchObject({ headline: 'You were signed out', first: 'sign-in' })
   })
 
+  test('what is not allowed any more may have been settled meanwhile: it can be read again', () => {
+    expect(words('may-not')).toEqual({
+      headline: 'as it came',
+      text: 'Nothing is signed. It may have been settled meanwhile.',
+      first: 'read-again',
+    })
+  })
+
   test('an answer that was lost promises nothing about what was done', () => {
     expect(words('network').text).not.toContain('Nothing is signed')
   })

@@ -40,6 +40,12 @@ describe('a difference', () => {
     expect(of(58.01, 59.01, '1')).toEqual(['58.01', '59.01'])
   })
 
+  test('of positions is rounded to the safe side, as onsets are everywhere', () => {
+    const position = { what: 'Position of the onset', was: 68.759, now: 69.149, unit: 'm/s', change: 'minor' as const }
+    expect(differenceTexts({ ...position, rounding: 'down' })).toEqual(['68.75 m/s', '69.14 m/s'])
+    expect(differenceTexts({ ...position, rounding: 'up' })).toEqual(['68.76 m/s', '69.15 m/s'])
+  })
+
   test('says what is not there, and counts as counts', () => {
     expect(of(null, 0.25)).toEqual(['not there', '0.2500'])
     expect(of(1, 2)).toEqual(['1', '2'])
