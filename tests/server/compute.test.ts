@@ -1,6 +1,7 @@
 import { afterEach, describe, expect, test, vi } from 'vitest'
 import { z } from 'zod'
 import { type ChildPool, type ChildPoolOptions, createChildPool } from '#server/compute/pool.ts'
+import { limits } from '#server/limits.ts'
 
 const script = new URL('./fixtures/hostile-child.ts', import.meta.url)
 const open: { close(): Promise<void> }[] = []
@@ -160,4 +161,9 @@ describe('the pool of child processes', () => {
     expect(await pool.run({ act: 'echo' })).toEqual({ ok: false, reason: 'not-started' })
     expect(new Set(events)).toEqual(new Set(['start-failed']))
   })
+})
+
+test('a card may take ten seconds, and a minute while the demonstration library is loaded', () => {
+  expect(limits.compute.cardDeadline).toBe(10_000)
+  expect(limits.loading).toEqual({ ...limits.compute, cardDeadline: 60_000 })
 })
