@@ -92,7 +92,7 @@ describe('leaving the draft', () => {
 describe('in the draft', () => {
   test('a fault without a line leads to its field, and the draft is not sent before it is settled', async () => {
     const tab = await open(cora)
-    const second = tab.getByLabel('Second control parameter')
+    const second = tab.getByLabel('Second control', { exact: true })
     const control = await tab.getByLabel('Control parameter', { exact: true }).inputValue()
     await second.selectOption(control)
     const list = tab.getByRole('list', { name: 'Faults of the model' })

@@ -65,7 +65,7 @@ export function SettingsFields({ doc, content, readOnly, faults, helpers }: Sett
         )}
         {select(
           'secondControl',
-          'Second control parameter',
+          'Second control',
           withCurrent(named(content.parameters), settings.secondControl ?? '', 'None'),
         )}
         {select('observed', 'Observed quantity', withCurrent(observable, settings.observed ?? '', 'Choose one'))}
