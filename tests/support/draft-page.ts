@@ -33,7 +33,7 @@ export const editable = (page: Page): Promise<void> =>
 /** Puts a text in the place of the whole equation block, key by key. */
 export async function typeEquations(page: Page, lines: readonly string[]): Promise<void> {
   await editable(page)
-  await equationBlock(page).click()
+  await lineOfBlock(page, 1).click()
   await page.keyboard.press('Control+a')
   await page.keyboard.type(lines.join('\n'))
 }
