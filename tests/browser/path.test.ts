@@ -1,5 +1,5 @@
 import type { Page } from 'playwright-core'
-import { beforeAll, describe, expect, test } from 'vitest'
+import { beforeAll, beforeEach, describe, expect, onTestFailed, test } from 'vitest'
 import * as Y from 'yjs'
 import { writeUpdate } from '#collab/frames.ts'
 import { loadDocument } from '#collab/persistence.ts'
@@ -78,6 +78,14 @@ async function open(who: TestPerson, at: string, options?: Parameters<typeof lib
   return tab
 }
 
+let broken = false
+beforeEach(() => {
+  if (broken) throw new Error('The path broke off in a test before this one.')
+  onTestFailed(() => {
+    broken = true
+  })
+})
+
 describe('from an empty library to a revision in force', () => {
   test('a contributor makes a page, types the Lorenz equations and reads 24.73, hard, off the card', async () => {
     const tab = await open(tove, '/new')
@@ -97,9 +105,9 @@ describe('from an empty library to a revision in force', () => {
     await fillRow(tab, 'v', { Symbol: 'y', From: '-25', To: '25', Start: '5', Unit: '', Meaning: '' })
     await tab.getByRole('button', { name: 'Add a state' }).click()
     await fillRow(tab, 'state 3', { Symbol: 'z', From: '-5', To: '50', Start: '15' })
-    await tab.getByLabel('Control parameter').selectOption('r')
-    await tab.getByLabel('Observed quantity').selectOption('x')
-    await tab.getByLabel('Time unit').fill('')
+    await tab.getByLabel('Control parameter', { exact: true }).selectOption('r')
+    await tab.getByLabel('Observed quantity', { exact: true }).selectOption('x')
+    await tab.getByLabel('Time unit', { exact: true }).fill('')
 
     await expectVerdict(tab, 'Hard onset at 24.73')
     await saved(tab)
