@@ -1,26 +1,14 @@
 // A private MariaDB on loopback: its own data directory, port and socket, never the machine's own server on 3306.
 // Plain Node without packages: the start command runs it before node_modules exists, and the tests share it.
-import { spawn, spawnSync } from 'node:child_process'
-import { randomBytes } from 'node:crypto'
-import {
-  chmodSync,
-  chownSync,
-  closeSync,
-  existsSync,
-  mkdirSync,
-  mkdtempSync,
-  openSync,
-  readFileSync,
-  renameSync,
-  rmSync,
-  writeFileSync,
-} from 'node:fs'
+import { spawn } from 'node:child_process'
+import { chmodSync, closeSync, existsSync, mkdtempSync, openSync, rmSync, writeFileSync } from 'node:fs'
 import { createServer } from 'node:net'
 import os from 'node:os'
 import path from 'node:path'
 import { setTimeout as sleep } from 'node:timers/promises'
 import { databaseOwner, makeDataDirectory, makeSocketFolder } from './data-directory.mjs'
-import { findProgram, run } from './programs.mjs'
+import { install, readCredentials, readText, setUpUsers, sql } from './mariadb-setup.mjs'
+import { findProgram } from './programs.mjs'
 
 const startDeadline = 90_000
 const stopDeadline = 60_000
@@ -34,16 +22,6 @@ const freePort = () =>
       probe.close(() => resolve(port))
     })
   })
-
-/** One SQL text through the socket, as the operating system's user. */
-function sql(socket, text) {
-  const user = `--user=${os.userInfo().username}`
-  const args = ['--no-defaults', `--socket=${socket}`, user, '--batch', '--skip-column-names']
-  const result = spawnSync(findProgram('mariadb'), args, { input: text, encoding: 'utf8' })
-  return { ok: result.status === 0, error: result.stderr }
-}
-
-const readText = (file) => (existsSync(file) ? readFileSync(file, 'utf8') : null)
 
 /** True while the process lives; one that ended and was not yet taken note of does not. */
 function isAlive(pid) {
@@ -61,37 +39,6 @@ function leftRunning(pidFile, data) {
   if (!(pid > 0) || !isAlive(pid)) return null
   const command = readText(`/proc/${pid}/cmdline`)
   return command === null || command.split('\0').includes(`--datadir=${data}`) ? pid : null
-}
-
-/** The passwords of the two database users, made once and kept beside the data. Each start sets them anew, so a damaged file is no loss. */
-function readCredentials(directory) {
-  const file = path.join(directory, 'credentials.json')
-  try {
-    const { app, migrate } = JSON.parse(readText(file) ?? '')
-    if (/^[\w-]{32}$/.test(app) && /^[\w-]{32}$/.test(migrate)) return { app, migrate }
-  } catch {}
-  const made = { app: randomBytes(24).toString('base64url'), migrate: randomBytes(24).toString('base64url') }
-  writeFileSync(`${file}.new`, JSON.stringify(made), { mode: 0o600 })
-  renameSync(`${file}.new`, file)
-  return made
-}
-
-/** Makes an empty database server's files, under another name until they are complete. */
-async function install(data, owner) {
-  const half = `${data}.new`
-  rmSync(half, { recursive: true, force: true })
-  mkdirSync(half)
-  if (owner) chownSync(half, owner.uid, owner.gid)
-  const args = [
-    '--no-defaults',
-    ...(owner ? ['--user=mysql'] : []),
-    `--datadir=${half}`,
-    '--auth-root-authentication-method=socket',
-    `--auth-root-socket-user=${os.userInfo().username}`,
-    '--skip-test-db',
-  ]
-  await run(findProgram('mariadb-install-db'), args, { quiet: true })
-  renameSync(half, data)
 }
 
 function launch({ directory, data, socket, port, owner, throwaway }) {
@@ -152,19 +99,6 @@ function watchParent(pid, folders) {
   watcher.unref()
   watcher.stdin.unref?.()
   return watcher
-}
-
-function setUpUsers(socket, credentials, throwaway) {
-  const made = sql(
-    socket,
-    `CREATE DATABASE IF NOT EXISTS brinkbook CHARACTER SET utf8mb4 COLLATE utf8mb4_unicode_ci;
-     CREATE OR REPLACE USER 'brinkbook'@'127.0.0.1' IDENTIFIED BY '${credentials.app}';
-     GRANT SELECT, INSERT, UPDATE, DELETE ON brinkbook.* TO 'brinkbook'@'127.0.0.1';
-     CREATE OR REPLACE USER 'brinkbook_migrate'@'127.0.0.1' IDENTIFIED BY '${credentials.migrate}';
-     GRANT ALL ON brinkbook.* TO 'brinkbook_migrate'@'127.0.0.1';
-     ${throwaway ? "GRANT ALL ON *.* TO 'brinkbook_migrate'@'127.0.0.1' WITH GRANT OPTION;" : ''}`,
-  )
-  if (!made.ok) throw new Error(`The database refused its set-up: ${made.error}`)
 }
 
 /**
