@@ -83,6 +83,8 @@ function Editing({ page, connection, onReload }: { page: Page; connection: Draft
       <DraftBand connection={connection} onReload={onReload} renew={renew} />
       <KeptLines person={viewer} page={page.id} />
       {!state.synced && state.phase !== 'refused' && <PencilLine label="Opening the draft" />}
+      {/* Its place is kept before the first card, so that nothing jumps when it comes. */}
+      {!live.card && <div aria-hidden className="sheet h-12 bench:hidden" />}
       {live.card && (
         <VerdictBar
           document={live.card.document}
@@ -91,11 +93,13 @@ function Editing({ page, connection, onReload }: { page: Page; connection: Draft
           className="sheet sticky top-0 z-20 border-b border-rule bench:hidden"
         />
       )}
-      {/* What gets the focus is not to stand under the bar. */}
-      <div className="grid grid-cols-1 items-start gap-4 max-bench:[&_:is(input,select,textarea,button,[role=slider])]:scroll-mt-16 bench:grid-cols-[minmax(0,432px)_minmax(0,1fr)] wide:grid-cols-[480px_minmax(0,1fr)]">
-        <DraftModelColumn connection={connection} live={live} readOnly={readOnly} earlier={earlier} />
-        <DraftCardColumn connection={connection} live={live} mayEdit={!readOnly} earlier={earlier} onStop={stop} />
-      </div>
+      {/* What gets the focus is not to stand under the bar. Before the draft has come there is nothing to lay out. */}
+      {state.synced && (
+        <div className="grid grid-cols-1 items-start gap-4 max-bench:[&_:is(input,select,textarea,button,[role=slider])]:scroll-mt-16 bench:grid-cols-[minmax(0,432px)_minmax(0,1fr)] wide:grid-cols-[480px_minmax(0,1fr)]">
+          <DraftModelColumn connection={connection} live={live} readOnly={readOnly} earlier={earlier} />
+          <DraftCardColumn connection={connection} live={live} mayEdit={!readOnly} earlier={earlier} onStop={stop} />
+        </div>
+      )}
     </main>
   )
 }

@@ -82,7 +82,7 @@ export function SteadyStates({ card, subject, at, states, exact, headingId }: St
       : 'Computed here. Searched, not proved: there may be others.'
     : 'Read between computed points of the branches.'
   return (
-    <section aria-labelledby={headingId}>
+    <section aria-labelledby={headingId} className="min-w-0">
       <h3 id={headingId} className="font-[640]">
         Steady states at{' '}
         {subject.control.meaning ? (
