@@ -29,6 +29,15 @@ class MessageWidget extends WidgetType {
     row.setAttribute('role', 'note')
     row.tabIndex = -1
     row.dataset.line = String(line)
+    // The editor ignores what happens in its widgets, so the row listens itself. A click leaves the caret where it is.
+    row.addEventListener('mousedown', (event) => {
+      if (!(event.target instanceof HTMLButtonElement)) event.preventDefault()
+    })
+    row.addEventListener('keydown', (event) => {
+      event.stopPropagation()
+      if (onMessageKey(event, view)) event.preventDefault()
+      else if (event.target === row && event.key.length === 1 && !event.ctrlKey && !event.metaKey) view.focus()
+    })
     const words = document.createElement('span')
     words.className = 'cm-message-words'
     words.textContent = `Line ${line}: ${message}`
@@ -128,8 +137,4 @@ function onMessageKey(event: KeyboardEvent, view: EditorView): boolean {
   return false
 }
 
-export const lineMessages: Extension = [
-  messagesField,
-  Prec.high(keymap.of([{ key: 'F8', run: nextMessage }])),
-  EditorView.domEventHandlers({ keydown: onMessageKey }),
-]
+export const lineMessages: Extension = [messagesField, Prec.high(keymap.of([{ key: 'F8', run: nextMessage }]))]
