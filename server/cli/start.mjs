@@ -1,5 +1,6 @@
 // npm start: everything from a bare machine to a running Brinkbook. Plain Node: it runs before node_modules exists.
 // Usage: npm start [-- --empty], npm run dev. Environment: PORT, BRINKBOOK_DATA (README.md).
+import { rmSync } from 'node:fs'
 import { createServer } from 'node:net'
 import path from 'node:path'
 import { setTimeout as sleep } from 'node:timers/promises'
@@ -60,6 +61,8 @@ const stopAsked = new Promise((resolve) => {
   askStop = resolve
 })
 let supervisor = null
+/** Folder of the database's socket and of this start's own. */
+let sockets = null
 
 /** First: what is under way ends, then everything in order. Again: the server is not waited for. */
 function onSignal() {
@@ -123,7 +126,8 @@ async function bringUp() {
   proceed()
   const directory = dataDirectory()
   makeDataDirectory(directory)
-  await claimDataDirectory(makeSocketFolder(directory, databaseOwner()), address)
+  sockets = makeSocketFolder(directory, databaseOwner())
+  await claimDataDirectory(sockets, address)
   if (!dev) await ensureClient(say)
   proceed()
   database.running = await startMariadb({ directory, say })
@@ -166,12 +170,19 @@ async function bringDown() {
   stopping = true
   await supervisor?.stop()
   await database.stop()
-  if (wasUp) say('Stopped; all data are kept')
+  if (!wasUp) return
+  rmSync(sockets, { recursive: true, force: true })
+  say('Stopped; all data are kept')
 }
 
 // A closed terminal must not keep the database from being stopped.
 for (const stream of [process.stdout, process.stderr]) stream.on('error', () => {})
 for (const signal of ['SIGINT', 'SIGTERM', 'SIGHUP']) process.on(signal, onSignal)
+// Whoever started this over a channel (tests) may be killed; then it is not wanted any more.
+if (process.channel) {
+  process.once('disconnect', onSignal)
+  process.channel.unref()
+}
 try {
   await bringUp()
 } catch (error) {

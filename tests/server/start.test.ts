@@ -5,7 +5,7 @@ import { setTimeout as sleep } from 'node:timers/promises'
 import mysql from 'mysql2/promise'
 import { afterAll, beforeAll, describe, expect, test } from 'vitest'
 import { z } from 'zod'
-import { freePort, holdPort, runScript, type Script, startScript } from '#tests/support/script.ts'
+import { freePort, holdPort, runScript, type Script, startScript, watchDatabase } from '#tests/support/script.ts'
 
 const script = 'server/cli/start.mjs'
 const isRoot = process.getuid?.() === 0
@@ -70,14 +70,11 @@ describe('npm start', () => {
   const started = new Set<Script>()
   let port = 0
   let running: Script
-  const start = (environment: Record<string, string> = {}) => {
+  const endWatch = watchDatabase(data)
+  const start = () => {
     // Whatever the user's own NODE_ENV is, the product runs as itself.
-    const made = startScript(script, ['--empty'], {
-      PORT: String(port),
-      BRINKBOOK_DATA: data,
-      NODE_ENV: 'production',
-      ...environment,
-    })
+    const environment = { PORT: String(port), BRINKBOOK_DATA: data, NODE_ENV: 'production' }
+    const made = startScript(script, ['--empty'], environment, { channel: true })
     started.add(made)
     return made
   }
@@ -103,6 +100,7 @@ describe('npm start', () => {
       if (isThere(pid)) process.kill(pid, 'SIGTERM')
       await gone(pid)
     }
+    endWatch()
     rmSync(data, { recursive: true })
   })
 

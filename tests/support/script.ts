@@ -22,12 +22,14 @@ export function startScript(
   script: string,
   args: string[] = [],
   environment: Record<string, string | undefined> = {},
+  options: { channel?: boolean } = {},
 ): Script {
   const loader = script.endsWith('.ts') ? ['--import', 'tsx'] : []
   const child = spawn(process.execPath, [...loader, script, ...args], {
     cwd: root,
     env: { PATH: process.env.PATH, HOME: process.env.HOME, ...environment },
-    stdio: ['ignore', 'pipe', 'pipe'],
+    // The channel tells a long-running script when this run is killed.
+    stdio: ['ignore', 'pipe', 'pipe', ...(options.channel ? ['ipc' as const] : [])],
   })
   let said = ''
   for (const stream of [child.stdout, child.stderr]) {
@@ -53,6 +55,26 @@ export async function runScript(
 ): Promise<{ code: number | null; output: string }> {
   const script = startScript(...given)
   return { code: await script.ended, output: script.output() }
+}
+
+/** Stops the database of a data directory when this run ends, however it ends; returns what ends the watch. */
+export function watchDatabase(data: string): () => void {
+  const program = `
+    process.stdin.on('data', () => process.exit())
+    process.stdin.on('end', () => {
+      const { readFileSync, rmSync } = require('node:fs')
+      const pid = Number(readFileSync(${JSON.stringify(path.join(data, 'mariadbd.pid'))}, 'utf8'))
+      const alive = () => { try { process.kill(pid, 0); return true } catch { return false } }
+      if (alive()) process.kill(pid, 'SIGTERM')
+      const timer = setInterval(() => {
+        if (alive()) return
+        clearInterval(timer)
+        rmSync(${JSON.stringify(data)}, { recursive: true, force: true })
+      }, 100)
+    })`
+  const watcher = spawn(process.execPath, ['-e', program], { detached: true, stdio: ['pipe', 'ignore', 'ignore'] })
+  watcher.unref()
+  return () => void watcher.stdin.end('done')
 }
 
 const portOf = z.object({ port: z.number() })
