@@ -347,7 +347,7 @@ describe('every screen', () => {
     await page.getByRole('radio', { name: 'dark' }).check()
     const ground = () => page.evaluate(() => getComputedStyle(document.documentElement).backgroundColor)
     // film: #0b1416 in the dark, #e6eceb in the light.
-    expect(await ground()).toBe('rgb(11, 20, 22)')
+    await expect.poll(ground).toBe('rgb(11, 20, 22)')
     await page.reload({ waitUntil: 'commit' })
     await page.waitForFunction(() => document.documentElement.dataset.theme === 'dark')
     await page.getByRole('button', { name: `Menu of ${tove.name}` }).click()
